@@ -1,0 +1,66 @@
+"""Every failure a user can meet, each with its exit code."""
+
+
+class KeptairError(Exception):
+    """An expected failure: one sentence saying what is wrong, and what to try.
+
+    `problems` lists every single thing found wrong, one line each; `hint` says what to do next.
+    """
+
+    exit_code = 1
+
+    def __init__(self, summary: str, problems: list[str] | None = None, hint: str = "") -> None:
+        self.summary = summary
+        self.problems = problems or []
+        self.hint = hint
+        super().__init__(self.message())
+
+    def message(self) -> str:
+        lines = [self.summary, *("  " + problem for problem in self.problems)]
+        if self.hint:
+            lines.append(f"Try: {self.hint}")
+        return "\n".join(lines)
+
+
+class UsageError(KeptairError):
+    """The command line asks for something that cannot be."""
+
+    exit_code = 2
+
+
+class SettingsError(UsageError):
+    """A settings file or value is wrong."""
+
+
+class NotThereError(UsageError):
+    """A planet, a run or a table that does not exist."""
+
+
+class CatalogueError(KeptairError):
+    """The catalogue cannot be read."""
+
+    exit_code = 3
+
+
+class ColumnMapError(CatalogueError):
+    """The column map does not fit the catalogue."""
+
+
+class TooManyRejectsError(KeptairError):
+    """The run is kept, but more rows were set aside than allowed: `latest` stays where it was."""
+
+    exit_code = 4
+
+
+class OutputError(KeptairError):
+    """The output folder cannot be written."""
+
+    exit_code = 6
+
+
+class StoppedError(KeptairError):
+    """A signal ended the run; nothing was published."""
+
+    def __init__(self, signal_number: int) -> None:
+        self.exit_code = 128 + signal_number
+        super().__init__("stopped; nothing was published")

@@ -1,0 +1,214 @@
+"""Fill: error bars become draws, gaps are filled and marked, and bulk density speaks."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from keptair import draws
+from keptair.batch import Array, Batch
+from keptair.draws import Sampler
+from keptair.physics import bulk, mass_radius
+from keptair.physics.constants import (
+    ASTRONOMICAL_UNIT,
+    DAY,
+    EARTH_MASS,
+    EARTH_RADIUS,
+    JUPITER_MASS,
+    SOLAR_LUMINOSITY,
+    SOLAR_MASS,
+    SOLAR_RADIUS,
+)
+from keptair.settings import Settings
+from keptair.tables import schema
+
+UNITS = {  # canonical unit in the unit the stages work in
+    "planet_radius_rearth": EARTH_RADIUS,
+    "planet_mass_mearth": EARTH_MASS,
+    "orbital_period_d": DAY,
+    "semi_major_axis_au": ASTRONOMICAL_UNIT,
+    "eccentricity": 1.0,
+    "insolation_earth": 1.0,
+    "bond_albedo": 1.0,
+    "stellar_teff_k": 1.0,
+    "stellar_radius_rsun": SOLAR_RADIUS,
+    "stellar_mass_msun": SOLAR_MASS,
+    "stellar_luminosity_lsun": SOLAR_LUMINOSITY,
+    "stellar_age_gyr": 1.0,
+    "stellar_xray_luminosity_w": 1.0,
+}
+DRAWN = tuple(UNITS)
+LIMIT_IS_MISSING = frozenset(
+    {
+        "semi_major_axis_au",
+        "orbital_period_d",
+        "stellar_luminosity_lsun",
+        "stellar_teff_k",
+        "stellar_radius_rsun",
+        "stellar_mass_msun",
+    }
+)
+DRAW_BOUNDS = {"eccentricity": (0.0, 0.95), "stellar_age_gyr": (0.01, 13.8)}  # others: the schema's
+LIMIT_REACH = 3.0  # a lower limit is drawn up to this many times itself
+STEEPEST_COSINE = 0.996  # cos i of a planet that need not transit
+MODEL_DRAWS = ("damping_exponent", "efficiency", "jeans_factor", "start_gyr", "inventory")
+SUBSTELLAR = 13 * JUPITER_MASS
+SETTLED_LATER = ("stellar_luminosity_lsun", "stellar_mass_msun", "semi_major_axis_au", "insolation_earth")
+
+
+def run(batch: Batch, settings: Settings) -> Batch:
+    """Draw every input, then fill what the catalogue lacks."""
+    sampler = Sampler(batch.columns["planet_id"], batch.columns["host_id"], settings.draws, settings.seed)
+    values, sources = read_inputs(batch, sampler)
+    flags = {
+        "flag.value_without_error": np.any([sources[name] == "measured_no_error" for name in DRAWN], axis=0),
+        "flag.one_sided_error": np.any([one_sided(batch, name) for name in DRAWN], axis=0),
+        "flag.limit_used": np.any([sources[name] == "limit" for name in DRAWN], axis=0),
+        "flag.age_from_prior": sources["stellar_age_gyr"] == "",
+    }
+    fill_priors(values, sources, sampler, settings)
+    transiting = (sources["planet_radius_rearth"] != "") | (batch.columns["transits"] == "yes")
+    incline(values, sources, transiting, sampler)
+    weighed = np.isin(sources["planet_mass_mearth"], ("measured", "measured_no_error", "given")) | (
+        (sources["planet_mass_mearth"] == "minimum") & transiting
+    )
+    flags |= relate(values, sources, sampler, settings)
+    radius, mass = values["planet_radius_rearth"] * EARTH_RADIUS, values["planet_mass_mearth"] * EARTH_MASS
+    flags["flag.substellar"] = draws.median(mass) > SUBSTELLAR
+    envelope = envelope_evidence(mass, radius, weighed, sources["planet_radius_rearth"] == "relation", settings)
+    assessed_bulk = ~np.isnan(mass[:, 0])
+    columns = {
+        **published(batch, values, sources),
+        **{name: flag & assessed_bulk if name == "flag.substellar" else flag for name, flag in flags.items()},
+        "is.weighed": weighed,
+        "is.sized": np.isin(sources["planet_radius_rearth"], ("measured", "measured_no_error", "given")),
+        "envelope_probability": np.where(assessed_bulk, draws.share(envelope), np.nan),
+    }
+    for name in SETTLED_LATER:  # the star's light and the orbit are settled where the flux is worked out
+        columns[f"source.{name}"] = sources[name]
+    made = {f"input.{name}": values[name] * unit for name, unit in UNITS.items()}
+    made |= {f"u.{name}": sampler(name) for name in MODEL_DRAWS}
+    made |= {"xuv_deviate": sampler.normal("xuv_level"), "scatter_deviate": sampler.normal("mass_radius_scatter")}
+    return batch.adding(columns, {**made, "is_envelope": envelope})
+
+
+def read_inputs(batch: Batch, sampler: Sampler) -> tuple[dict[str, Array], dict[str, Array]]:
+    """Draws of every catalogued input, in canonical units, and where each came from ("" where there is none)."""
+    values, sources = {}, {}
+    for column in schema.inputs():
+        if column.type != "number":
+            continue
+        name = column.name
+        value, bound = batch.columns[f"catalogue.{name}"], batch.columns[f"{name}_bound"]
+        plus, minus = batch.columns[f"{name}_err_plus"], batch.columns[f"{name}_err_minus"]
+        kind_name = name.rsplit("_", 1)[0] + "_kind"
+        kind = batch.columns.get(kind_name, np.full(len(batch), "", dtype=object))
+        present = ~np.isnan(value) & (kind != "relation")
+        if name in LIMIT_IS_MISSING:
+            present &= bound == ""
+        source = np.full(len(batch), "measured", dtype=object)
+        source[np.isnan(plus) & np.isnan(minus)] = "measured_no_error"
+        source[kind == "minimum"] = "minimum"
+        source[bound != ""] = "limit"
+        given = batch.columns.get(f"given.{name}")
+        if given is not None:
+            source[given] = "given"
+        source[~present] = ""
+        sources[name] = source
+        if name not in DRAWN:
+            continue
+        bounds = draw_bounds(name)
+        plus, minus = np.where(np.isnan(plus), minus, plus), np.where(np.isnan(minus), plus, minus)
+        drawn = draws.measured(value, np.nan_to_num(plus), np.nan_to_num(minus), bounds, sampler(name))
+        upper, lower = (source == "limit") & (bound == "upper"), (source == "limit") & (bound == "lower")
+        if upper.any():
+            drawn[upper] = draws.between(bounds[0], value[upper, None], sampler(name)[upper])
+        if lower.any():
+            start = np.maximum(value[lower, None], 1e-300)
+            end = np.maximum(np.minimum(LIMIT_REACH * start, bounds[1]), start)
+            drawn[lower] = draws.log_between(start, end, sampler(name)[lower])
+        drawn[~present] = np.nan
+        values[name] = drawn
+    return values, sources
+
+
+def draw_bounds(name: str) -> tuple[float, float]:
+    """What the draws of an input are kept to: the schema's bounds, or its own."""
+    column = schema.catalogue()[name]
+    low, high = column.minimum, column.maximum
+    return DRAW_BOUNDS.get(name, (low if low is not None else -np.inf, high if high is not None else np.inf))
+
+
+def one_sided(batch: Batch, name: str) -> Array:
+    """Rows whose value has an error on one side only."""
+    plus, minus = np.isnan(batch.columns[f"{name}_err_plus"]), np.isnan(batch.columns[f"{name}_err_minus"])
+    has_value = ~np.isnan(batch.columns[f"catalogue.{name}"]) & (batch.columns[f"{name}_bound"] == "")
+    one: Array = has_value & (plus != minus)
+    return one
+
+
+def fill_priors(values: dict[str, Array], sources: dict[str, Array], sampler: Sampler, settings: Settings) -> None:
+    """A missing albedo or age is drawn from its prior, a missing eccentricity is 0."""
+    priors = {"bond_albedo": settings.bond_albedo, "stellar_age_gyr": settings.age_prior_gyr}
+    for name, (low, high) in priors.items():
+        gap = sources[name] == ""
+        values[name][gap] = draws.between(low, high, sampler(name)[gap])
+        sources[name][gap] = "prior"
+    gap = sources["eccentricity"] == ""
+    values["eccentricity"][gap] = 0.0
+    sources["eccentricity"][gap] = "assumed"
+
+
+def incline(values: dict[str, Array], sources: dict[str, Array], transiting: Array, sampler: Sampler) -> None:
+    """M sin i becomes M: cos i is uniform unless the planet transits."""
+    tilted = (sources["planet_mass_mearth"] == "minimum") & ~transiting
+    if tilted.any():
+        cosine = STEEPEST_COSINE * sampler("inclination")[tilted]
+        mass = values["planet_mass_mearth"][tilted] / np.sqrt(1 - np.square(cosine))
+        values["planet_mass_mearth"][tilted] = np.minimum(mass, draw_bounds("planet_mass_mearth")[1])
+
+
+def relate(
+    values: dict[str, Array], sources: dict[str, Array], sampler: Sampler, settings: Settings
+) -> dict[str, Array]:
+    """Fill a missing mass from the radius, or a missing radius from the mass; flag a mass no radius can tell."""
+    no_mass, no_radius = sources["planet_mass_mearth"] == "", sources["planet_radius_rearth"] == ""
+    deviate, uniform = sampler.normal("mass_radius_scatter"), sampler("mass_radius_scatter")
+    from_radius, from_mass = no_mass & ~no_radius, no_radius & ~no_mass
+    if from_radius.any():
+        radius = values["planet_radius_rearth"][from_radius] * EARTH_RADIUS
+        mass = mass_radius.chen_kipping_mass(radius, deviate[from_radius], uniform[from_radius])
+        values["planet_mass_mearth"][from_radius] = np.clip(mass / EARTH_MASS, *draw_bounds("planet_mass_mearth"))
+        sources["planet_mass_mearth"][from_radius] = "relation"
+    if from_mass.any():
+        mass = values["planet_mass_mearth"][from_mass] * EARTH_MASS
+        radius = mass_radius.chen_kipping_radius(mass, deviate[from_mass])
+        values["planet_radius_rearth"][from_mass] = radius / EARTH_RADIUS
+        sources["planet_radius_rearth"][from_mass] = "relation"
+    large = draws.median(values["planet_radius_rearth"]) > mass_radius.RADIUS_BREAKS[1]
+    return {"flag.mass_degenerate": from_radius & large}
+
+
+def envelope_evidence(mass: Array, radius: Array, weighed: Array, filled_radius: Array, settings: Settings) -> Array:
+    """Draws lighter than rock of any core; without a measured mass, larger than rock gets.
+
+    Small icy bodies are light without having air: no draw within one Earth radius and mass counts.
+    """
+    lighter_than_rock = radius > bulk.silicate_radius(mass)
+    large = radius > settings.verdict.radius_only_rearth * EARTH_RADIUS
+    small = (radius <= EARTH_RADIUS) & (mass <= EARTH_MASS)
+    evidence: Array = np.where((weighed | filled_radius)[:, None], lighter_than_rock, large) & ~small
+    return evidence
+
+
+def published(batch: Batch, values: dict[str, Array], sources: dict[str, Array]) -> dict[str, Array]:
+    """The inputs as used: measured values as catalogued, everything else the median of its draws."""
+    columns = {}
+    for name in schema.measured_inputs():
+        if name in SETTLED_LATER:
+            continue
+        catalogued = batch.columns[f"catalogue.{name}"]
+        as_it_stands = np.isin(sources[name], ("measured", "measured_no_error", "given"))
+        drawn = draws.median(values[name]) if name in DRAWN else catalogued
+        columns[name] = np.where(as_it_stands, catalogued, drawn)
+        columns[f"{name}_source"] = sources[name]
+    return columns

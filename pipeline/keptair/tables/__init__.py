@@ -1,0 +1,1 @@
+"""What schemas/ says, as code."""
