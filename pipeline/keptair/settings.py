@@ -54,8 +54,11 @@ class Verdict(Group):
 class HighEnergyLight(Group):
     """The star's X-ray and extreme-ultraviolet light."""
 
-    law: Literal["saturated-power-law"] = number("saturated-power-law", "", "how high-energy light fades with age")
+    law: Literal["saturated-power-law", "ribas-2005", "sanz-forcada-2011"] = number(
+        "saturated-power-law", "", "how high-energy light fades with age"
+    )
     scatter_dex: float = number(0.4, "dex", "scatter of one star about the law, constant in time", ge=0, le=2)
+    measured_scatter_dex: float = number(0.3, "dex", "the same where X-rays were measured", ge=0, le=2)
     saturation_log10: float = number(-3.2, "dex", "log10 of L_XUV over L_bol while saturated", ge=-6, le=-1)
     saturation_gyr: float = number(0.066, "Gyr", "end of saturation for a star of one solar mass", gt=0, le=5)
     saturation_mass_exponent: float = number(
@@ -103,7 +106,7 @@ class Settings(Group):
 
     verdict: Verdict = Field(Verdict(), description="where probability becomes a verdict")
     xuv: HighEnergyLight = Field(HighEnergyLight(), description="the star's high-energy light")
-    mass_radius: Literal["chen-kipping-2017"] = number(
+    mass_radius: Literal["chen-kipping-2017", "otegi-2020"] = number(
         "chen-kipping-2017", "", "relation that fills a missing mass or radius"
     )
     backgrounds: dict[str, Background] = Field(default_factory=load_backgrounds, description="main gases of upper air")
@@ -117,12 +120,12 @@ class Settings(Group):
         """[backgrounds.<key>] and [gases.<key>] of a file change or add entries; the others stay."""
         if not isinstance(values, Mapping):
             return values
-        built_in = {"backgrounds": load_backgrounds(), "gases": load_gases()}
+        built_in: dict[str, Mapping[str, BaseModel]] = {"backgrounds": load_backgrounds(), "gases": load_gases()}
         merged = dict(values)
         for name, entries in built_in.items():
             given = values.get(name)
             if isinstance(given, Mapping) and all(isinstance(entry, Mapping) for entry in given.values()):
-                plain = {key: entry.model_dump(exclude_none=True) for key, entry in entries.items()}
+                plain: dict[str, Any] = {key: entry.model_dump(exclude_none=True) for key, entry in entries.items()}
                 merged[name] = {**plain, **{key: _merge(plain.get(key, {}), entry) for key, entry in given.items()}}
         return merged
 

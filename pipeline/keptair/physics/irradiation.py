@@ -40,6 +40,34 @@ def luminosity(star_radius: Numbers, star_temperature: Numbers) -> Numbers:
     return 4 * np.pi * np.square(star_radius) * STEFAN_BOLTZMANN * np.square(np.square(star_temperature))
 
 
+def star_radius(star_luminosity: Numbers, star_temperature: Numbers) -> Numbers:
+    """Radius of a sphere of given luminosity and effective temperature.
+
+    R* = √(L / 4π σ T⁴)
+
+    Parameters
+    ----------
+    star_luminosity : array [W]
+    star_temperature : array [K]
+
+    Returns
+    -------
+    array [m]
+
+    Notes
+    -----
+    Stefan–Boltzmann law.
+
+    Examples
+    --------
+    The nominal Sun (IAU 2015 Resolution B3: 6.957e8 m):
+
+    >>> f"{star_radius(3.828e26, 5772.0):.3e}"
+    '6.957e+08'
+    """
+    return np.sqrt(star_luminosity / (4 * np.pi * STEFAN_BOLTZMANN)) / np.square(star_temperature)
+
+
 def insolation(star_luminosity: Numbers, axis: Numbers) -> Numbers:
     """Stellar flux at the semi-major axis, in solar constants.
 

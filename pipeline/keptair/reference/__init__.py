@@ -39,3 +39,10 @@ def diffusion_pair(gas: str, partners: tuple[str, ...]) -> DiffusionPair | None:
     """The pair of a gas with the first partner the table knows it with; None asks for hard spheres."""
     table = load_diffusion()
     return next((table[gas, partner] for partner in partners if (gas, partner) in table), None)
+
+
+@cache
+def load_main_sequence() -> dict[str, tuple[float, ...]]:
+    """Mean dwarf stars, coolest first: a tuple per column."""
+    sequence = read_toml("main_sequence")
+    return dict(zip(sequence["columns"], zip(*sequence["dwarfs"], strict=True), strict=True))

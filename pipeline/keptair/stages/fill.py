@@ -19,6 +19,7 @@ from keptair.physics.constants import (
     SOLAR_RADIUS,
 )
 from keptair.settings import Settings
+from keptair.stages import dwarfs
 from keptair.tables import schema
 
 UNITS = {  # canonical unit in the unit the stages work in
@@ -66,7 +67,11 @@ def run(batch: Batch, settings: Settings) -> Batch:
         "flag.age_from_prior": sources["stellar_age_gyr"] == "",
     }
     fill_priors(values, sources, sampler, settings)
-    transiting = (sources["planet_radius_rearth"] != "") | (batch.columns["transits"] == "yes")
+    mean_dwarf = dwarfs.fill_radius(values, sources)
+    magnitudes, mean_magnitude = dwarfs.magnitudes(batch, values, sources)
+    flags["flag.main_sequence_fallback"] = mean_dwarf | mean_magnitude
+    sized = np.isin(sources["planet_radius_rearth"], ("measured", "measured_no_error", "given"))
+    transiting = sized | (batch.columns["transits"] == "yes")
     incline(values, sources, transiting, sampler)
     weighed = np.isin(sources["planet_mass_mearth"], ("measured", "measured_no_error", "given")) | (
         (sources["planet_mass_mearth"] == "minimum") & transiting
@@ -77,10 +82,11 @@ def run(batch: Batch, settings: Settings) -> Batch:
     envelope = envelope_evidence(mass, radius, weighed, sources["planet_radius_rearth"] == "relation", settings)
     assessed_bulk = ~np.isnan(mass[:, 0])
     columns = {
-        **published(batch, values, sources),
+        **published(batch, values, sources, magnitudes),
         **{name: flag & assessed_bulk if name == "flag.substellar" else flag for name, flag in flags.items()},
         "is.weighed": weighed,
-        "is.sized": np.isin(sources["planet_radius_rearth"], ("measured", "measured_no_error", "given")),
+        "is.sized": sized,
+        "is.mean_dwarf": mean_dwarf,
         "envelope_probability": np.where(assessed_bulk, draws.share(envelope), np.nan),
     }
     for name in SETTLED_LATER:  # the star's light and the orbit are settled where the flux is worked out
@@ -176,16 +182,25 @@ def relate(
     from_radius, from_mass = no_mass & ~no_radius, no_radius & ~no_mass
     if from_radius.any():
         radius = values["planet_radius_rearth"][from_radius] * EARTH_RADIUS
-        mass = mass_radius.chen_kipping_mass(radius, deviate[from_radius], uniform[from_radius])
+        mass = (
+            mass_radius.otegi_mass(radius)
+            if settings.mass_radius == "otegi-2020"
+            else mass_radius.chen_kipping_mass(radius, deviate[from_radius], uniform[from_radius])
+        )
         values["planet_mass_mearth"][from_radius] = np.clip(mass / EARTH_MASS, *draw_bounds("planet_mass_mearth"))
         sources["planet_mass_mearth"][from_radius] = "relation"
     if from_mass.any():
         mass = values["planet_mass_mearth"][from_mass] * EARTH_MASS
-        radius = mass_radius.chen_kipping_radius(mass, deviate[from_mass])
+        radius = (
+            mass_radius.otegi_radius(mass)
+            if settings.mass_radius == "otegi-2020"
+            else mass_radius.chen_kipping_radius(mass, deviate[from_mass])
+        )
         values["planet_radius_rearth"][from_mass] = radius / EARTH_RADIUS
         sources["planet_radius_rearth"][from_mass] = "relation"
     large = draws.median(values["planet_radius_rearth"]) > mass_radius.RADIUS_BREAKS[1]
-    return {"flag.mass_degenerate": from_radius & large}
+    degenerate = from_radius & large & (settings.mass_radius == "chen-kipping-2017")
+    return {"flag.mass_degenerate": degenerate}
 
 
 def envelope_evidence(mass: Array, radius: Array, weighed: Array, filled_radius: Array, settings: Settings) -> Array:
@@ -200,15 +215,18 @@ def envelope_evidence(mass: Array, radius: Array, weighed: Array, filled_radius:
     return evidence
 
 
-def published(batch: Batch, values: dict[str, Array], sources: dict[str, Array]) -> dict[str, Array]:
+def published(
+    batch: Batch, values: dict[str, Array], sources: dict[str, Array], magnitudes: dict[str, Array]
+) -> dict[str, Array]:
     """The inputs as used: measured values as catalogued, everything else the median of its draws."""
     columns = {}
     for name in schema.measured_inputs():
+        catalogued = batch.columns[f"catalogue.{name}"]
+        columns[f"{name}_catalogued"] = catalogued
         if name in SETTLED_LATER:
             continue
-        catalogued = batch.columns[f"catalogue.{name}"]
         as_it_stands = np.isin(sources[name], ("measured", "measured_no_error", "given"))
-        drawn = draws.median(values[name]) if name in DRAWN else catalogued
+        drawn = draws.median(values[name]) if name in DRAWN else magnitudes.get(name, catalogued)
         columns[name] = np.where(as_it_stands, catalogued, drawn)
         columns[f"{name}_source"] = sources[name]
     return columns

@@ -6,10 +6,11 @@ import numpy as np
 
 from keptair import draws
 from keptair.batch import Array, Batch
-from keptair.physics import activity, bulk, irradiation, orbit
+from keptair.physics import bulk, irradiation, orbit
 from keptair.physics.constants import ASTRONOMICAL_UNIT, SOLAR_LUMINOSITY, SOLAR_MASS, SOLAR_RADIUS
 from keptair.settings import Settings
-from keptair.stages.starlight import xuv_at
+from keptair.stages.dwarfs import mean_dwarf
+from keptair.stages.starlight import activity_draws, xuv_at
 
 HYDROGEN_SHARES = (0.001, 0.90)  # the hydrogen share is kept within these
 GIANT_RADIUS = 2.5 * SOLAR_RADIUS
@@ -39,7 +40,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
         gravity=bulk.surface_gravity(mass, radius),
         roche_ratio=orbit.roche_ratio(mass, radius, known_axis, eccentricity, star_mass),
         hydrogen_share=bulk.hydrogen_share(mass, radius, flux, batch.draws["input.stellar_age_gyr"]),
-        **star_activity(batch, light, star_mass, settings),
+        **activity_draws(batch, light, star_mass, settings),
     )
     lit = lit.with_draws(xuv_now=xuv_at(lit, settings, batch.draws["input.stellar_age_gyr"]))
     columns = {
@@ -69,8 +70,11 @@ def star_luminosity(batch: Batch) -> tuple[Array, Array]:
 
 
 def stellar_mass(batch: Batch, light: Array) -> tuple[Array, Array]:
-    """The catalogue's mass, else that of a dwarf of this luminosity."""
-    return first_known(batch, "stellar_mass_msun", irradiation.mass_from_luminosity(light), "relation")
+    """The catalogue's mass, else that of a dwarf of this luminosity; a mean dwarf keeps its own."""
+    mean = SOLAR_MASS * mean_dwarf("mass_msun", batch.draws["input.stellar_teff_k"])
+    stands_in = batch.columns["is.mean_dwarf"][:, None] & ~np.isnan(mean)
+    worked_out = np.where(stands_in, mean, irradiation.mass_from_luminosity(light))
+    return first_known(batch, "stellar_mass_msun", worked_out, "relation")
 
 
 def semi_major_axis(batch: Batch, star_mass: Array) -> tuple[Array, Array]:
@@ -101,18 +105,6 @@ def insolation(batch: Batch, light: Array, axis: Array, settings: Settings) -> t
     disagrees: Array = both & (apart > settings.insolation_tolerance * theirs[1]) & (apart > 2 * error)
     source[known] = "computed"
     return np.where(known[:, None], worked_out, catalogued), source, disagrees
-
-
-def star_activity(batch: Batch, light: Array, star_mass: Array, settings: Settings) -> dict[str, Array]:
-    """When the star leaves saturation, and how much brighter than the law it is."""
-    law = settings.xuv
-    coronal = np.where(np.isnan(light), 1.0, activity.coronal_share(light, star_mass))
-    return {
-        "saturation_age": activity.saturation_age(
-            star_mass, law.saturation_gyr, law.saturation_mass_exponent, law.saturation_mass_cap_msun
-        ),
-        "xuv_level": coronal * 10 ** (law.scatter_dex * batch.draws["xuv_deviate"]),
-    }
 
 
 def far_from_dwarfs(batch: Batch) -> Array:

@@ -9,6 +9,7 @@ from keptair.batch import Array, Batch
 from keptair.physics import bulk, shoreline
 from keptair.physics.constants import EARTH_MASS
 from keptair.settings import Settings
+from keptair.stages.decisive import decisive
 from keptair.stages.exobase import HYDROGEN, pick
 
 ROCK_LINE_MASSES = (1 * EARTH_MASS, 8 * EARTH_MASS)  # where the silicate line was made
@@ -39,9 +40,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
         "verdict_reason": reasons(batch, verdict, ~kept, frozen),
         "quick_rule_verdict": quick_rule(batch, settings),
         "shoreline_dex": np.where(assessed, draws.median(shoreline_draws(batch)), np.nan),
-        "decisive_input": np.full(len(batch), "", dtype=object),
-        "decisive_share": np.full(len(batch), np.nan),
-        "model_share": np.full(len(batch), np.nan),
+        **decisive(batch, is_envelope, kept),
         "flag.near_threshold": near_threshold(envelope_probability, secondary_probability, verdict, frozen, settings),
         "flag.silicate_line_extrapolated": beyond_rock_line(batch),
     }

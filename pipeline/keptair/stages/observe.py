@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from keptair.batch import Array, Batch
+from keptair.batch import Batch
 from keptair.physics import irradiation, spectroscopy
 from keptair.physics.constants import EARTH_RADIUS
 from keptair.settings import Settings

@@ -2,13 +2,55 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from keptair.batch import Array, Batch
 from keptair.physics import activity
 from keptair.settings import Settings
 
 
+def activity_draws(batch: Batch, light: Array, star_mass: Array, settings: Settings) -> dict[str, Array]:
+    """What the activity laws need of the star; where its light is not known, that of a dwarf of its mass."""
+    law = settings.xuv
+    bolometric = np.where(np.isnan(light), activity.dwarf_luminosity(star_mass), light)
+    x_ray = batch.draws["input.stellar_xray_luminosity_w"]
+    measured = ~np.isnan(x_ray)
+    scatter = np.where(measured, law.measured_scatter_dex, law.scatter_dex)
+    return {
+        "bolometric": bolometric,
+        "coronal": activity.coronal_luminosity(bolometric, star_mass),
+        "saturation_age": activity.saturation_age(
+            star_mass, law.saturation_gyr, law.saturation_mass_exponent, law.saturation_mass_cap_msun
+        ),
+        "xuv_measured": x_ray + activity.extreme_ultraviolet(x_ray),
+        "xuv_level": 10 ** (scatter * batch.draws["xuv_deviate"]),
+    }
+
+
 def xuv_at(batch: Batch, settings: Settings, age: Array) -> Array:
     """High-energy flux at `age` [Gyr] in units of the Earth's, shape (planet, draw)."""
-    law = settings.xuv
-    share = activity.power_law_xuv_share(age, batch.draws["saturation_age"], law.saturation_log10, law.decline_exponent)
-    return activity.xuv_flux(batch.draws["mean_flux"], share * batch.draws["xuv_level"])
+    star, law = batch.draws, settings.xuv
+    share = law_share(batch, settings, age)
+    measured = ~np.isnan(star["xuv_measured"][:, 0])
+    if measured.any():
+        traced = activity.traced_back_luminosity(
+            star["xuv_measured"][measured],
+            star["input.stellar_age_gyr"][measured],
+            age[measured],
+            10**law.saturation_log10 * star["coronal"][measured],
+            law.decline_exponent,
+        )
+        share[measured] = traced / star["bolometric"][measured]
+    return activity.xuv_flux(star["mean_flux"], share * star["xuv_level"])
+
+
+def law_share(batch: Batch, settings: Settings, age: Array) -> Array:
+    """L_XUV over L_bol by the chosen law."""
+    star, law = batch.draws, settings.xuv
+    coronal_share = star["coronal"] / star["bolometric"]
+    if law.law == "ribas-2005":
+        return activity.ribas_xuv_share(age) * coronal_share
+    if law.law == "sanz-forcada-2011":
+        return activity.sanz_forcada_luminosity(age, star["coronal"]) / star["bolometric"]
+    share = activity.power_law_xuv_share(age, star["saturation_age"], law.saturation_log10, law.decline_exponent)
+    return share * coronal_share

@@ -1,0 +1,243 @@
+"""The column map: which column of a file is which canonical input, as its TOML says."""
+
+from __future__ import annotations
+
+import re
+import tomllib
+from collections.abc import Mapping
+from difflib import get_close_matches
+from pathlib import Path
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, PrivateAttr, StrictInt, StrictStr, ValidationError
+
+from keptair.catalogue.showing import quoted, shown
+from keptair.errors import ColumnMapError
+from keptair.tables import rules, schema
+
+KINDS = {
+    "planet_radius_rearth": ("planet_radius_kind", ("measured", "relation")),
+    "planet_mass_mearth": ("planet_mass_kind", ("measured", "minimum", "relation")),
+}
+FOR_NUMBERS = ("unit", "plus", "minus", "bound", "upper", "lower")
+FOR_KINDS = ("without_error", "kind", "kinds")
+FOR_TEXTS = ("words",)
+
+
+def _as_list(value: Any) -> Any:
+    return value if isinstance(value, list | tuple) else [value]
+
+
+Reference = StrictStr | StrictInt  # a column's name, or its position from 1
+Word = StrictStr | bool | StrictInt | float
+
+
+class _Part(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid", populate_by_name=True)
+
+
+class FileEntry(_Part):
+    """[file]"""
+
+    comment: StrictStr = "#"
+    missing: tuple[StrictStr, ...] = ()
+    carry: Annotated[tuple[StrictStr, ...], BeforeValidator(_as_list)] = ()
+
+
+class ColumnEntry(_Part):
+    """[columns.<canonical name>]"""
+
+    sources: Annotated[tuple[Reference, ...], BeforeValidator(_as_list)] = Field((), alias="from")
+    unit: StrictStr = ""
+    missing: Annotated[tuple[Word, ...], BeforeValidator(_as_list)] = ()
+    plus: Reference | None = None
+    minus: Reference | None = None
+    bound: Reference | None = None
+    upper: Reference | None = None
+    lower: Reference | None = None
+    without_error: Literal["measured", "relation"] = "measured"
+    kind: Reference | None = None
+    kinds: dict[str, str] = {}
+    words: dict[str, str] = {}
+    date: StrictStr = ""
+
+
+class RowsEntry(_Part):
+    """[rows.keep] and [rows.drop]"""
+
+    keep: dict[str, Annotated[tuple[Word, ...], BeforeValidator(_as_list)]] = {}
+    drop: dict[str, Annotated[tuple[Word, ...], BeforeValidator(_as_list)]] = {}
+
+
+class ColumnMap(_Part):
+    """A column map; once resolved against a file, every entry names the columns that are read."""
+
+    file: FileEntry = FileEntry()
+    rows: RowsEntry = RowsEntry()
+    columns: dict[str, ColumnEntry] = {}
+    constants: dict[str, Word] = {}
+
+    _name: str = PrivateAttr("")
+    _lines: dict[tuple[str, ...], int] = PrivateAttr(default_factory=dict)
+
+    @classmethod
+    def read(cls, source: str | Path | Mapping[str, Any] | ColumnMap | None) -> ColumnMap:
+        """From a TOML file, a dictionary of the same shape, or nothing."""
+        if isinstance(source, ColumnMap):
+            return source
+        if source is None:
+            return cls()
+        if isinstance(source, Mapping):
+            return cls._checked(source, "the column map", {})
+        path = Path(source)
+        try:
+            text = path.read_text(encoding="utf-8")
+            return cls._checked(tomllib.loads(text), path.name, _lines_of(text))
+        except OSError as error:
+            raise ColumnMapError(f"{path}: the column map cannot be read ({error.strerror})") from None
+        except UnicodeDecodeError:
+            raise ColumnMapError(f"{path}: the column map is not UTF-8 text") from None
+        except tomllib.TOMLDecodeError as error:
+            raise ColumnMapError(f"{path}: the column map is not TOML ({error})") from None
+
+    @classmethod
+    def _checked(cls, values: Mapping[str, Any], name: str, lines: dict[tuple[str, ...], int]) -> ColumnMap:
+        try:
+            column_map = cls.model_validate(values)
+        except ValidationError as error:
+            problems = [_sentence(problem, lines) for problem in error.errors()]
+            raise ColumnMapError(f"{name}: {_count(problems)}", problems, "keptair map CATALOGUE") from None
+        column_map._name, column_map._lines = name, lines
+        problems = column_map._mistakes()
+        if problems:
+            raise ColumnMapError(f"{name}: {_count(problems)}", problems, "keptair columns catalogue")
+        return column_map
+
+    def as_dict(self) -> dict[str, Any]:
+        """The map in the shape of its TOML; reading that gives this map again."""
+        return self.model_dump(mode="json", by_alias=True, exclude_defaults=True)
+
+    def place(self, *keys: str) -> str:
+        """Where something stands, for a message: `line 7 [columns.planet_id] from`."""
+        return _place(keys, self._lines)
+
+    def _mistakes(self) -> list[str]:
+        """Everything wrong that can be seen without the file."""
+        problems: list[str] = []
+        known = {column.name: column for column in schema.inputs()}
+        for name, entry in self.columns.items():
+            if name in known:
+                problems += self._mistakes_of_entry(name, entry, known[name].type == "number")
+            else:
+                problems.append(f"{self.place('columns', name)}: {_no_such_input(name)}")
+        for name, value in self.constants.items():
+            where = self.place("constants", name)
+            if name not in known or name == "planet_id":
+                problems.append(f"{where}: {_no_such_input(name)}")
+            elif name in self.columns:
+                problems.append(f"{where}: [columns.{name}] gives it too; keep one")
+            else:
+                wrong = rules.complaint(known[name], value)
+                problems += [f"{where} = {_written(value)}: {wrong}"] if wrong else []
+        return problems
+
+    def _mistakes_of_entry(self, name: str, entry: ColumnEntry, number: bool) -> list[str]:
+        problems = []
+        allowed = (FOR_NUMBERS if number else FOR_TEXTS) + (FOR_KINDS if name in KINDS else ())
+        allowed += ("date",) if name == "updated" else ()
+        for key in sorted(entry.model_fields_set - {"sources", "missing", *allowed}):
+            reason = f"means nothing for {name}; possible are from, missing, {', '.join(allowed)}"
+            problems.append(f"{self.place('columns', name, key)}: {reason}")
+        possible = KINDS[name][1] if name in KINDS else ()
+        for word, kind in entry.kinds.items():
+            if possible and kind not in possible:
+                where = self.place("columns", name, "kinds", word)
+                problems.append(f"{where} = {quoted(kind)}: should be {' or '.join(possible)}")
+        if entry.kinds and entry.kind is None:
+            problems.append(f"{self.place('columns', name, 'kinds')}: say which column holds these words, kind = …")
+        if name in KINDS and entry.kind is not None and KINDS[name][0] in self.columns:
+            problems.append(f"{self.place('columns', name, 'kind')}: [columns.{KINDS[name][0]}] gives it too; keep one")
+        return problems
+
+
+def kinds_from(entry: ColumnEntry, name: str) -> dict[str, str]:
+    """Words of a kind column → kinds; the kinds themselves where the map gives no words."""
+    return entry.kinds or {kind: kind for kind in KINDS[name][1]}
+
+
+def looked_up(word: str, words: Mapping[str, str]) -> str | None:
+    """What a word stands for: as written, whatever its case, `1.0` as `1`, then "*" for any other."""
+    from keptair.catalogue.cells import without_point_zero
+
+    for spelling in (word, without_point_zero(word)):
+        if spelling in words:
+            return words[spelling]
+    folded = {key.casefold(): value for key, value in words.items()}
+    return folded.get(word.casefold(), words.get("*"))
+
+
+def close_to(name: str, names: list[str], likeness: float = 0.6) -> str:
+    """The most similar of the names, "" if none is."""
+    folded = {re.sub(r"[\W_]", "", other).casefold(): other for other in reversed(names)}
+    plain = re.sub(r"[\W_]", "", name).casefold()
+    if len(plain) > 200:
+        return ""
+    found = get_close_matches(plain, [other for other in folded if len(other) <= 200], n=1, cutoff=likeness)
+    return folded[found[0]] if found else ""
+
+
+def _no_such_input(name: str) -> str:
+    kinds = {kind for kind, _ in KINDS.values()} if "kind" not in name else set()
+    near = close_to(name, [column.name for column in schema.inputs() if column.name not in kinds])
+    return "no such canonical column" + (f"; {near} was meant?" if near else "")
+
+
+def _written(value: object) -> str:
+    return (
+        quoted(value)
+        if isinstance(value, str)
+        else shown(str(value).lower() if isinstance(value, bool) else str(value))
+    )
+
+
+def _count(problems: list[str]) -> str:
+    return f"the column map cannot be used ({len(problems)} problem{'s' if len(problems) > 1 else ''})"
+
+
+def _place(keys: tuple[str, ...], lines: Mapping[tuple[str, ...], int]) -> str:
+    number = lines.get(keys) or lines.get(keys[:-1])
+    if number is None:  # only a table below it is written out
+        number = min((line for known, line in lines.items() if known[: len(keys)] == keys), default=None)
+    line = f"line {number} " if number else ""
+    table = {"columns": 2, "rows": 2}.get(keys[0], 1) + (keys[2:3] in (("kinds",), ("words",)))
+    head, rest = keys[:table], keys[table:]
+    return f"{line}[{shown('.'.join(head))}]" + (f" {shown('.'.join(rest))}" if rest else "")
+
+
+def _sentence(problem: Any, lines: Mapping[tuple[str, ...], int]) -> str:
+    keys = tuple(str(key) for key in problem["loc"] if not _is_union_branch(key))
+    where = _place(keys, lines) if keys else "the map"
+    if problem["type"] == "extra_forbidden":
+        parts = {1: ColumnMap, 2: FileEntry if keys[0] == "file" else RowsEntry, 3: ColumnEntry}
+        known = [field.alias or name for name, field in parts[min(len(keys), 3)].model_fields.items()]
+        near = close_to(keys[-1], known)
+        return f"{where}: no such key; {near + ' was meant?' if near else 'possible are ' + ', '.join(known)}"
+    message = problem["msg"].removeprefix("Value error, ").removeprefix("Input ")
+    return f"{where} = {_written(problem['input'])}: {message}"
+
+
+def _is_union_branch(key: object) -> bool:
+    return isinstance(key, int) or key in ("constrained-str", "constrained-int", "str", "int", "bool", "float")
+
+
+def _lines_of(text: str) -> dict[tuple[str, ...], int]:
+    """Line numbers of the tables and keys of a TOML text, as far as they stand one on a line."""
+    lines: dict[tuple[str, ...], int] = {}
+    table: tuple[str, ...] = ()
+    for number, line in enumerate(text.splitlines(), start=1):
+        if head := re.match(r"\s*\[\s*([^\[\]]+?)\s*\]", line):
+            table = tuple(part.strip().strip("\"'") for part in head[1].split("."))
+            lines.setdefault(table, number)
+        elif key := re.match(r"""\s*("[^"]*"|'[^']*'|[\w-]+)\s*=""", line):
+            lines.setdefault((*table, key[1].strip("\"'")), number)
+    return lines

@@ -1,0 +1,92 @@
+"""Parquet: a file, or a folder of files read one after the other in the order of their names."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from keptair.catalogue.showing import quoted, shown
+from keptair.catalogue.table import Block, RawTable
+from keptair.errors import CatalogueError
+
+ROWS = 1 << 16  # in one block
+
+
+def files_of(path: Path) -> list[Path]:
+    """The Parquet files of a folder, or the file itself."""
+    if not path.is_dir():
+        return [path]
+    found = sorted(file for file in path.rglob("*.parquet") if file.is_file())
+    if not found:
+        raise CatalogueError(f"{path.name}: the folder holds no .parquet file")
+    return found
+
+
+def open_parquet(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every format is opened alike
+    """A table whose types come from the file; a boolean column `x.mask`, as astropy writes it, marks x as missing."""
+    files = files_of(path)
+    with _readable(files[0]) as parquet:
+        schema = parquet.schema_arrow
+    names = tuple(name for name in schema.names if not _is_mask(name, schema))
+    units = tuple(_unit(schema, name) for name in names)
+
+    def blocks(positions: tuple[int, ...], remarks: list[str]) -> Iterator[Block]:  # noqa: ARG001
+        row = 1
+        for file in files:
+            with _readable(file) as parquet:
+                if parquet.schema_arrow.names != schema.names:
+                    raise CatalogueError(f"{file.name}: has other columns than {files[0].name}; put them into one form")
+                wanted = [names[position] for position in positions]
+                masks = [f"{name}.mask" for name in wanted if f"{name}.mask" in schema.names]
+                for batch in parquet.iter_batches(batch_size=ROWS, columns=wanted + masks, use_threads=False):
+                    rows = np.arange(row, row + batch.num_rows, dtype=np.int64)
+                    row += batch.num_rows
+                    columns = {position: _column(batch, names[position], file) for position in positions}
+                    yield Block(rows, np.zeros(len(rows), dtype=np.int64), columns)
+
+    return RawTable("Parquet", names, units, blocks)
+
+
+@contextmanager
+def _readable(file: Path) -> Iterator[Any]:
+    """The opened file; whatever is wrong with it, in one sentence."""
+    import pyarrow as pa
+    import pyarrow.parquet as pq
+
+    try:
+        with pq.ParquetFile(file, thrift_string_size_limit=64 << 20, thrift_container_size_limit=1_000_000) as parquet:
+            yield parquet
+    except (pa.ArrowException, OSError, MemoryError, OverflowError) as error:
+        raise CatalogueError(f"{file.name}: cannot be read as Parquet ({shown(str(error), 160)})") from None
+
+
+def _is_mask(name: str, schema: Any) -> bool:
+    import pyarrow as pa
+
+    of = name.removesuffix(".mask")
+    return of != name and of in schema.names and bool(pa.types.is_boolean(schema.field(name).type))
+
+
+def _unit(schema: Any, name: str) -> str:
+    """The unit in the field's metadata, where pyarrow users put it."""
+    metadata = schema.field(schema.names.index(name)).metadata or {}
+    return (metadata.get(b"unit") or metadata.get(b"units") or b"").decode("utf-8", errors="replace")
+
+
+def _column(batch: Any, name: str, file: Path) -> Any:
+    import pyarrow as pa
+    import pyarrow.compute as pc
+
+    column = batch.column(name)
+    if pa.types.is_dictionary(column.type):
+        column = pc.cast(column, column.type.value_type)
+    if pa.types.is_nested(column.type):
+        raise CatalogueError(f"{file.name}: the column {quoted(name)} holds lists or structures, not one value a row")
+    mask = f"{name}.mask"
+    if mask in batch.schema.names:
+        column = pc.if_else(pc.fill_null(batch.column(mask), False), None, column)
+    return column

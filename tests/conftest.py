@@ -1,0 +1,16 @@
+"""Fixtures for every test: batches made by hand and the Solar System."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from typing import Any
+
+import handmade
+import pytest
+from keptair.batch import Batch
+
+
+@pytest.fixture
+def make_batch() -> Callable[[Sequence[Mapping[str, Any]]], Batch]:
+    """Makes a screened batch of rows written as canonical names and values; see `handmade.make_batch`."""
+    return handmade.make_batch
