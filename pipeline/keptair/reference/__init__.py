@@ -36,9 +36,13 @@ def load_diffusion() -> dict[tuple[str, str], DiffusionPair]:
 
 
 def diffusion_pair(gas: str, partners: tuple[str, ...]) -> DiffusionPair | None:
-    """The pair of a gas with the first partner the table knows it with; None asks for hard spheres."""
+    """The pair of a gas with the first partner the table knows it with; None asks for hard spheres.
+
+    Either way round: H2 through N2 and N2 through H2 have the same b.
+    """
     table = load_diffusion()
-    return next((table[gas, partner] for partner in partners if (gas, partner) in table), None)
+    pairs = (pair for partner in partners for pair in ((gas, partner), (partner, gas)))
+    return next((table[pair] for pair in pairs if pair in table), None)
 
 
 @cache

@@ -33,6 +33,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
     lit = batch.with_draws(
         luminosity=light,
         star_mass=star_mass,
+        axis=axis,
         flux=flux,
         mean_flux=mean_flux,
         equilibrium=equilibrium,
