@@ -21,7 +21,7 @@ def absorption_radius(
         Any value where not bound.
     roche_ratio : array [1]
         ξ, Roche-lobe radius in planet radii.
-    bound : array of bool
+    bound : array [bool]
     cap : float [1]
         In planet radii.
 
@@ -107,18 +107,18 @@ def flows_out(
 
     Parameters
     ----------
-    bound : array of bool
+    bound : array [bool]
     conductive : array [K]
         T_cond.
     key_jeans : array [1]
         λ of the key escaper.
     conduction_limit : float [K]
     jeans_limit : float [1]
-    radiate : bool
+    radiate : bool [bool]
 
     Returns
     -------
-    array of bool
+    array [bool]
 
     Notes
     -----

@@ -1,7 +1,6 @@
 """Escape times and the loss over a planet's life."""
 
 import numpy as np
-from numpy.typing import NDArray
 
 from keptair.physics.arrays import Numbers
 from keptair.physics.constants import GIGAYEAR
@@ -48,9 +47,9 @@ def epoch_age(start: Numbers, age: Numbers, epoch: int, epochs: int) -> Numbers:
     start : array [Gyr]
         t₀.
     age : array [Gyr]
-    epoch : int
+    epoch : int [1]
         k, from 0.
-    epochs : int
+    epochs : int [1]
         n.
 
     Returns
@@ -83,8 +82,8 @@ def epoch_weight(start: Numbers, age: Numbers, at: Numbers, epoch: int, epochs: 
     age : array [Gyr]
     at : array [Gyr]
         t_k.
-    epoch : int
-    epochs : int
+    epoch : int [1]
+    epochs : int [1]
 
     Returns
     -------
@@ -104,30 +103,3 @@ def epoch_weight(start: Numbers, age: Numbers, at: Numbers, epoch: int, epochs: 
     """
     end = 0.5 if epoch in (0, epochs - 1) else 1.0
     return at * np.log(age / start) * (end / (epochs - 1))
-
-
-def share(true: NDArray[np.bool_]) -> NDArray[np.float64]:
-    """Share of draws in which something is true.
-
-    P = (number of draws) / (all draws)
-
-    Parameters
-    ----------
-    true : array of bool
-        Shape (planet, draw).
-
-    Returns
-    -------
-    array [1]
-        Shape (planet,).
-
-    Notes
-    -----
-    Definition.
-
-    Examples
-    --------
-    >>> share(np.array([[True, False]])).tolist()
-    [0.5]
-    """
-    return np.count_nonzero(true, axis=1) / true.shape[1]

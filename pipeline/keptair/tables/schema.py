@@ -166,11 +166,15 @@ def _published_inputs(entries: list[dict[str, Any]]) -> list[Column]:
             columns.append(_column({**keep, "stage": "screen"}))
             continue
         inherited = {"type": "number", "unit": entry.get("unit", ""), "ucd": entry["ucd"]}
+        settled = {"stage": entry.get("stage", entries[0]["stage"])}
         inherited |= {f"constraints.{key}": bound for key, bound in entry.get("constraints", {}).items()}
-        columns.append(_fill_in(inherited | entries[0], entry["name"], values))
+        columns.append(_fill_in(inherited | entries[0] | settled, entry["name"], values))
         for companion in companions:
             unit = {"unit": entry.get("unit", "")} if companion["type"] == "number" else {}
-            columns.append(_fill_in({**companion, **unit}, entry["name"], values))
+            stage = companion["stage"]
+            if companion["name"] == "{input}_source":  # settled together with the value
+                stage = entry.get("stage", stage)
+            columns.append(_fill_in({**companion, **unit, "stage": stage}, entry["name"], values))
     return columns
 
 

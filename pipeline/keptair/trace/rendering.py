@@ -61,14 +61,21 @@ def _step(step: Step, said: set[str]) -> list[str]:
     if step.percentiles and len(set(step.percentiles)) > 1:
         spread = "[" + ", ".join(_number(one) for one in step.percentiles) + "]"
     head = f"{name:40} {value:>10} {step.unit}".rstrip()
-    lines = [f"{head:62} {spread}".rstrip()] if len(head) <= 61 else [head, *([f"{INDENT}{spread}"] if spread else [])]
-    if len(lines[0]) > WIDTH:
-        lines = [head, f"{INDENT}{spread}"]
+    if len(head) > WIDTH:
+        lines = [name, *_wrapped(value)]
+    elif spread and len(head) + len(spread) < WIDTH:
+        lines = [f"{head} {spread:>{WIDTH - 1 - len(head)}}"]
+    else:
+        lines = [head, *_wrapped(spread)]
     for text in (step.origin, step.formula, step.source):
         if text and (text == step.origin or text not in said):
             said.add(text)
-            lines += textwrap.wrap(text, WIDTH, initial_indent=INDENT, subsequent_indent=INDENT)
+            lines += _wrapped(text)
     return lines
+
+
+def _wrapped(text: str) -> list[str]:
+    return textwrap.wrap(text, WIDTH, initial_indent=INDENT, subsequent_indent=INDENT)
 
 
 def _table(section: Section) -> list[str]:
