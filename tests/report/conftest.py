@@ -33,12 +33,14 @@ RUN = {
 def table(name: schema.TableName, rows: Sequence[dict[str, Any]]) -> pa.Table:
     """Rows of a published table; what a row does not say is empty, 0 or null, as its type has it."""
     columns = schema.table(name)
-    unknown = {key for row in rows for key in row} - set(columns.names)
-    assert not unknown, unknown
+    said = {key for row in rows for key in row}
+    assert said <= set(columns.names), said - set(columns.names)
     blank = {"text": "", "int64": 0, "float32": None, "float64": None}
     fields = pa.schema([(column.name, TYPES[column.storage]) for column in columns])
     arrays = {
         column.name: pa.array([row.get(column.name, blank[column.storage]) for row in rows], TYPES[column.storage])
+        if column.name in said
+        else pa.repeat(pa.scalar(blank[column.storage], TYPES[column.storage]), len(rows))
         for column in columns
     }
     return pa.table(arrays, schema=fields)

@@ -5,6 +5,8 @@ import numpy as np
 from keptair.physics.arrays import Numbers
 from keptair.physics.constants import EARTH_MASS, EARTH_RADIUS, GRAVITATION
 
+LARGEST_ROCK = 3.6  # [R⊕]
+
 
 def surface_gravity(planet_mass: Numbers, planet_radius: Numbers) -> Numbers:
     """Gravity at the catalogue radius.
@@ -93,7 +95,7 @@ def escape_speed(planet_mass: Numbers, distance: Numbers) -> Numbers:
 def silicate_radius(planet_mass: Numbers) -> Numbers:
     """Radius of a ball of rock without an iron core: nothing solid is larger.
 
-    R = 1.07 R⊕ (M/M⊕)^(1/3.7)
+    R = min(1.07 (M/M⊕)^(1/3.7), 3.6) R⊕
 
     Parameters
     ----------
@@ -105,7 +107,9 @@ def silicate_radius(planet_mass: Numbers) -> Numbers:
 
     Notes
     -----
-    Zeng, Sasselov & Jacobsen 2016, doi:10.3847/0004-637X/819/2/127, at core mass fraction 0; made for 1–8 M⊕.
+    Zeng, Sasselov & Jacobsen 2016, doi:10.3847/0004-637X/819/2/127, at core mass fraction 0; made for 1–8 M⊕. Under its
+    own pressure rock stops growing: Seager et al. 2007, doi:10.1086/521346 (value from memory), find no silicate ball
+    above 3.6 R⊕ at any mass. Without that end a brown dwarf would pass for rock.
 
     Examples
     --------
@@ -114,7 +118,8 @@ def silicate_radius(planet_mass: Numbers) -> Numbers:
     >>> round(silicate_radius(5.97217e24) / 6.3781e6, 2)
     1.07
     """
-    return 1.07 * EARTH_RADIUS * (planet_mass / EARTH_MASS) ** (1 / 3.7)
+    growing = 1.07 * (planet_mass / EARTH_MASS) ** (1 / 3.7)
+    return EARTH_RADIUS * np.minimum(growing, LARGEST_ROCK)
 
 
 def hydrogen_share(planet_mass: Numbers, planet_radius: Numbers, mean_flux: Numbers, age: Numbers) -> Numbers:

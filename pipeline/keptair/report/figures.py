@@ -27,6 +27,7 @@ EARTH = (11.186, 1.0)  # JPL Planetary Physical Parameters
 STEEPNESS = 4  # of the shoreline: insolation goes as escape speed to this power
 
 CROWD = 1500  # above so many planets each verdict has a panel of its own, and marks no names
+EDGES = (0.01, 0.99)  # quantiles a crowd's frame reaches to; the few beyond stand on its edge
 CELL = 0.5  # percent of the frame: in a crowd, planets within one cell share a mark
 PAPER = (640.0, 420.0)  # size in pixels at which labels are kept apart
 LETTER = (7.5, 15.0)
@@ -111,6 +112,7 @@ class Picture:
     names: tuple[Label, ...]
     drawn: int
     left_out: int
+    on_the_edge: int
     mars: tuple[float, float] = MARS
 
 
@@ -127,15 +129,17 @@ def shoreline(planets: pa.Table, marked: Mapping[str, str] = MappingProxyType({}
     if not usable.any():
         return None
     name, verdict = (planets[column].to_numpy(zero_copy_only=False)[usable] for column in ("planet_id", "verdict"))
-    x_axis = _axis(np.append(speed[usable], [MARS[0], EARTH[0]]))
-    y_axis = _axis(np.append(light[usable], [MARS[1], EARTH[1]]), upward=True)
-    x, y = x_axis.place(speed[usable]), y_axis.place(light[usable])
+    speed, light = speed[usable], light[usable]
+    crowded = len(speed) > CROWD
+    x_axis, y_axis = _axis(speed, (MARS[0], EARTH[0]), crowded), _axis(light, (MARS[1], EARTH[1]), crowded, upward=True)
+    x, y = x_axis.place(speed), y_axis.place(light)
+    outside = (np.minimum(x, y) < 0) | (np.maximum(x, y) > 100)
+    x, y = np.clip(x, 0, 100), np.clip(y, 0, 100)
     line = _line(x_axis, y_axis)
-    crowded = len(x) > CROWD
     places = {planet: (float(x[index]), float(y[index])) for index, planet in enumerate(name) if planet in marked}
     references = tuple(
         Label(percent(float(x_axis.place(at[0]))), percent(float(y_axis.place(at[1]))), dx, dy, anchor, text)
-        for text, at, dx, dy, anchor in (("Earth", EARTH, 8, 5, "start"), ("Mars", MARS, -7, -6, "end"))
+        for text, at, dx, dy, anchor in (("Earth", EARTH, 7, -5, "start"), ("Mars", MARS, -2, -9, "middle"))
     )
     return Picture(
         x_axis,
@@ -148,6 +152,7 @@ def shoreline(planets: pa.Table, marked: Mapping[str, str] = MappingProxyType({}
         () if crowded else _mark_labels(places, marked),
         len(x),
         len(usable) - len(x),
+        int(outside.sum()),
     )
 
 
@@ -160,8 +165,10 @@ def percent(share: float) -> str:
     return f"{share:.2f}".rstrip("0").rstrip(".") + "%"
 
 
-def _axis(values: Floats, upward: bool = False) -> Axis:
-    low, high = float(np.log10(values).min()), float(np.log10(values).max())
+def _axis(values: Floats, always: tuple[float, float], crowded: bool, upward: bool = False) -> Axis:
+    ends = np.quantile(values, EDGES) if crowded else values
+    logs = np.log10(np.append(ends, always))
+    low, high = float(logs.min()), float(logs.max())
     margin = 0.04 * (high - low)
     return Axis(low - margin, high + margin, upward)
 
@@ -190,7 +197,7 @@ def _beside(line: tuple[float, float, float, float]) -> Label:
     """The line's name by its lower end, on the side where air is kept."""
     x1, y1, x2, y2 = line
     at = 0.12
-    return Label(percent(x1 + at * (x2 - x1)), percent(y1 + at * (y2 - y1)), 10, 10, "start", "cosmic shoreline")
+    return Label(percent(x1 + at * (x2 - x1)), percent(y1 + at * (y2 - y1)), 10, 12, "start", "cosmic shoreline")
 
 
 def _panels(x: Floats, y: Floats, name: NDArray[Any], verdict: NDArray[Any], crowded: bool) -> tuple[Panel, ...]:
