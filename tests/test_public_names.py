@@ -1,6 +1,8 @@
 """What `import keptair` offers, and what it costs."""
 
+import ast
 import importlib
+import inspect
 import subprocess
 import sys
 
@@ -26,6 +28,30 @@ def test_the_public_names_are_those_of_their_homes():
     assert keptair.run is importlib.import_module("keptair.runs.running").run
     assert keptair.load is importlib.import_module("keptair.runs.loading").load
     assert keptair.errors is importlib.import_module("keptair.errors")
+
+
+def test_type_checkers_see_every_public_name():
+    tree = ast.parse(inspect.getsource(keptair))
+    checked = next(node for node in tree.body if isinstance(node, ast.If))
+    seen = {alias.name for node in checked.body if isinstance(node, ast.ImportFrom) for alias in node.names}
+    assert ast.unparse(checked.test) == "TYPE_CHECKING"
+    assert seen == set(keptair.__all__) - {"__version__"}
+
+
+@pytest.mark.parametrize(
+    ("name", "arguments"),
+    [
+        (
+            "run",
+            {"catalogue": ..., "out": ..., "settings": None, "column_map": None, "workers": None, "executor": None},
+        ),
+        ("load", {"where": ..., "table": "planets", "as_": "pandas"}),
+    ],
+)
+def test_functions_take_what_is_promised(name, arguments):
+    taken = inspect.signature(getattr(keptair, name)).parameters.values()
+    found = {given.name: ... if given.default is given.empty else given.default for given in taken}
+    assert arguments.items() <= found.items()
 
 
 def test_any_other_name_is_no_attribute():

@@ -80,6 +80,7 @@ def _show_traceback() -> None:
 def _run(options: argparse.Namespace) -> int:
     from keptair.errors import TooManyRejectsError
     from keptair.rendering import as_json, closing_summary, progress_bar
+    from keptair.runs.publish import undisturbed
     from keptair.runs.running import run
     from keptair.settings import Settings
 
@@ -87,9 +88,10 @@ def _run(options: argparse.Namespace) -> int:
     settings = Settings.read(options.settings, flags)
     with progress_bar(quiet=options.quiet) as progress:
         done = run(options.catalogue, options.out, settings, options.map, options.workers, progress=progress)
-    print(as_json(done.manifest) if options.json else done.path)
-    if not options.quiet:
-        print(closing_summary(done), file=sys.stderr)
+    with undisturbed():  # published: there is nothing left to stop
+        print(as_json(done.manifest) if options.json else done.path, flush=True)
+        if not options.quiet:
+            print(closing_summary(done), file=sys.stderr)
     if done.exit_code:
         rows = done.manifest["rows"]
         raise TooManyRejectsError(
@@ -102,11 +104,10 @@ def _run(options: argparse.Namespace) -> int:
 
 def _check(options: argparse.Namespace) -> int:
     from keptair.catalogue.checking import check
-    from keptair.catalogue.columns import ColumnMap
     from keptair.rendering import as_json
     from keptair.settings import Settings
 
-    found = check(options.catalogue, ColumnMap.read(options.map), Settings())
+    found = check(options.catalogue, options.map, Settings())
     print(as_json(found.as_dict()) if options.json else "\n".join(found.lines()))
     return 0
 

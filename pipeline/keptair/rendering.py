@@ -42,13 +42,14 @@ def progress_bar(quiet: bool) -> Iterator[Progress | None]:
 
 def closing_summary(run: Run) -> str:
     """What became of the catalogue, for a person: 80 columns, paths never cut."""
-    rows, verdicts = run.manifest["rows"], run.manifest["verdicts"]
+    rows, emptied, verdicts = (run.manifest[key] for key in ("rows", "cells_emptied", "verdicts"))
     lines = [
         f"{rows['read']:,} rows read = {rows['filtered']:,} filtered + {rows['set_aside']:,} set aside "
         f"+ {rows['accepted']:,} accepted",
-        f"{run.manifest['cells_emptied']:,} cells emptied (filled like any gap, and flagged)",
+        f"{emptied:,} {'cell' if emptied == 1 else 'cells'} emptied (filled like any gap, and flagged)",
         ", ".join(f"{verdict} {count:,}" for verdict, count in verdicts.items()),
     ]
+    lines += [f"note: {remark}" for remark in run.manifest["remarks"]]
     wrapped = [part for line in lines for part in textwrap.wrap(line, WIDTH, subsequent_indent="  ")]
     found = [f"table   {run.path / 'planets.parquet'}", f"report  {run.path / 'report.html'}"]
     return "\n".join([*wrapped, *found, f"{run.manifest['seconds']['total']:.1f} s"])

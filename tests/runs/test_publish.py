@@ -95,11 +95,20 @@ def test_others_may_read_what_the_umask_lets_them(tmp_path):
     assert modes == [0o750, 0o640, 0o640]
 
 
-def test_a_folder_called_latest_is_not_touched(tmp_path):
-    (tmp_path / "latest").mkdir()
-    with pytest.raises(OutputError, match="latest: is a folder, where the link to the latest run should be"):
+@pytest.mark.parametrize("name", ["latest", "latest.json"])
+def test_a_folder_in_place_of_the_link_or_pointer_is_not_touched(tmp_path, name):
+    (tmp_path / name).mkdir()
+    (tmp_path / name / "mine").write_text("stays")
+    with pytest.raises(OutputError, match=f"{name}: stands where the name of the latest run belongs"):
         published(tmp_path)
-    assert [file.name for file in (tmp_path / "latest").iterdir()] == []
+    assert (tmp_path / name / "mine").read_text() == "stays"
+
+
+def test_a_file_in_place_of_the_link_is_not_touched(tmp_path):
+    (tmp_path / "latest").write_text("mine")
+    with pytest.raises(OutputError, match="latest: stands where the name of the latest run belongs"):
+        published(tmp_path)
+    assert (tmp_path / "latest").read_text() == "mine"
 
 
 def test_where_there_are_no_links_the_pointer_alone_will_do(tmp_path, monkeypatch):

@@ -205,3 +205,17 @@ def test_a_file_in_place_of_the_folder_is_said(catalogue, quick, tmp_path):
     with pytest.raises(OutputError, match=r"out: cannot be written \(Not a directory\); nothing was published"):
         keptair.run(catalogue, tmp_path / "out", quick)
     assert (tmp_path / "out").read_text() == "mine"
+
+
+@pytest.mark.parametrize(
+    "step", ["keptair.report.write", "keptair.runs.package.write_json", "keptair.runs.publish._sync"]
+)
+def test_a_disk_that_fills_up_at_any_step_publishes_nothing(catalogue, quick, tmp_path, monkeypatch, step):
+    def full(*_, **__):
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr(step, full)
+    with pytest.raises(OutputError, match="No space left on device"):
+        keptair.run(catalogue, tmp_path, quick)
+    assert [file.name for file in tmp_path.iterdir()] == ["runs"]
+    assert not list((tmp_path / "runs").iterdir())

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import json
 import os
 import shutil
@@ -90,7 +91,8 @@ def writing(folder: Path) -> Iterator[None]:
     try:
         yield
     except OSError as error:
-        refused = os.strerror(error.errno) if error.errno else str(error)
+        number = error.errno or (errno.ENOENT if isinstance(error, FileNotFoundError) else 0)
+        refused = os.strerror(number) if number else str(error)
         raise OutputError(
             f"{folder}: cannot be written ({refused}); nothing was published",
             hint="a folder of your own on a disk with room, as --out DIR",
@@ -123,8 +125,11 @@ def read_latest(out: Path) -> Mapping[str, Any] | None:
 def _make_ready(out: Path) -> None:
     """The folders, without what a run that was cut off left behind."""
     (out / "runs").mkdir(parents=True, exist_ok=True)
-    if (out / "latest").is_dir() and not (out / "latest").is_symlink():
-        raise OutputError(f"{out / 'latest'}: is a folder, where the link to the latest run should be", hint="move it")
+    for name, in_the_way in (("latest", not (out / "latest").is_symlink()), (LATEST, (out / LATEST).is_dir())):
+        if in_the_way and (out / name).exists():
+            raise OutputError(
+                f"{out / name}: stands where the name of the latest run belongs", hint="move it elsewhere"
+            )
     for leftover in out.glob(f"{PART}*"):
         if leftover.is_dir() and not leftover.is_symlink():
             shutil.rmtree(leftover)

@@ -55,7 +55,7 @@ def run(
 
     Parameters
     ----------
-    catalogue : path of the catalogue
+    catalogue : path or address (https://, s3://) of the catalogue
     out : folder of runs; made if it is not there
     settings : Settings, or the path of a TOML file; the defaults without
     column_map : the path of a TOML file, or one read already; without, the catalogue has the canonical columns
@@ -71,9 +71,8 @@ def run(
         raise UsageError(f"workers = {workers}: should be 1 or more")
     clock = Clock()
     chosen = settings if isinstance(settings, Settings) else Settings.read(settings)
-    given = column_map if isinstance(column_map, ColumnMap) or column_map is None else ColumnMap.read(column_map)
     with clock.measure("read"):
-        source = open_catalogue(str(catalogue), given)
+        source = open_catalogue(catalogue, column_map)
     tables = output.tables(chosen, source.carried)
     manifest = _known_before(source, chosen)
     at_hand = workers or batches.processors()
@@ -149,6 +148,7 @@ def _known_before(source: Catalogue, settings: Settings) -> dict[str, Any]:
     return {
         "catalogue": {"path": source.source, "bytes": source.bytes, "sha256": source.sha256},
         "column_map": _for_json(source.column_map.as_dict()),
+        "remarks": source.remarks,
         "settings": json.loads(settings.model_dump_json()),
         "settings_changed": _changed(settings),
         "versions": {
