@@ -39,7 +39,7 @@ schemas: $(INSTALLED) ## check the schemas and write the data dictionary, schema
 	$(BIN)/python -m keptair.tables.dictionary
 
 handbook: $(INSTALLED) ## checks against published values: source, expected, obtained, tolerance
-	$(BIN)/python tests/handbook/show.py
+	PYTHONPATH=tests $(BIN)/python -m handbook
 
 verify: $(INSTALLED) ## the Solar System through the default settings
 	$(BIN)/keptair verify

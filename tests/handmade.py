@@ -1,64 +1,56 @@
-"""Batches made by hand: rows of canonical values become what the stages take, without a catalogue in between."""
+"""Rows for tests written in few words: batches by hand and bodies of the Solar System."""
 
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from typing import Any
 
-import numpy as np
-from keptair.batch import Array, Batch
+from keptair.batch import Batch
+from keptair.physics.constants import EARTH_MASS, EARTH_RADIUS, GRAVITATION
+from keptair.records import from_records
+from keptair.reference import read_toml
 from keptair.tables import schema
 
-SIDES = ("_err_plus", "_err_minus")
+ERRORS = ("_err_plus", "_err_minus")
 
 
 def make_batch(rows: Sequence[Mapping[str, Any]]) -> Batch:
-    """A screened batch.
+    """A screened batch of rows of canonical names and values.
 
-    A row holds canonical names, each number's `_err_plus`, `_err_minus` and `_bound` where it has any, and an `_err`
-    that stands for both errors. What a row leaves out is missing; a mass or radius counts as measured unless its
-    kind says otherwise.
+    `<name>_err` stands for both errors, planets without a planet_id are numbered, what a row leaves out is missing,
+    and a name no table knows is a mistake of the test.
     """
-    rows = [_spelled_out(row) for row in rows]
-    columns: dict[str, Array] = {
-        "row": np.arange(1, len(rows) + 1),
-        "fingerprint": _texts(rows, "fingerprint", "0" * 16),
-        "flag.cell_emptied": np.zeros(len(rows), dtype=bool),
+    return from_records([_spelled_out({"planet_id": f"planet {place}", **row}) for place, row in enumerate(rows, 1)])
+
+
+def solar_system(*names: str, background: str = "") -> list[dict[str, Any]]:
+    """Rows of bodies of the Solar System by their keys in solar_system.toml, all of them where none is named."""
+    reference = read_toml("solar_system")
+    star = {name: value for name, value in reference["star"].items() if name != "source"}
+    bodies = reference["bodies"]
+    return [_body(name, bodies[name], star | {"background": background}) for name in names or bodies]
+
+
+def _body(name: str, body: Mapping[str, Any], others: Mapping[str, Any]) -> dict[str, Any]:
+    return {
+        **others,
+        "planet_id": name,
+        "host_id": "sun",
+        "planet_mass_mearth": body["gm_m3_s2"] / GRAVITATION / EARTH_MASS,
+        "planet_radius_rearth": body["radius_m"] / EARTH_RADIUS,
+        "semi_major_axis_au": body["semi_major_axis_au"],
+        "eccentricity": body["eccentricity"],
+        "bond_albedo": body["bond_albedo"],
     }
-    for column in schema.inputs():
-        name = column.name
-        if column.type == "number":
-            columns["catalogue." + name] = _numbers(rows, name)
-            columns |= {name + side: _numbers(rows, name + side) for side in SIDES}
-            columns[name + "_bound"] = _texts(rows, name + "_bound")
-        elif name == "background":
-            columns["catalogue.background"] = _texts(rows, name)
-        elif name == "planet_id":
-            columns[name] = np.array(
-                [row.get(name, f"planet {number}") for number, row in enumerate(rows, 1)], dtype=object
-            )
-        else:
-            columns[name] = _texts(rows, name, "measured" if name.endswith("_kind") else "")
-    return Batch(columns)
 
 
 def _spelled_out(row: Mapping[str, Any]) -> dict[str, Any]:
-    """`<name>_err` written out as both errors; a name no table knows is a mistake of the test."""
     plain: dict[str, Any] = {}
     for name, value in row.items():
-        if name.endswith("_err"):
-            plain |= {name + side.removeprefix("_err"): value for side in SIDES}
-        else:
-            plain[name] = value
-    unknown = plain.keys() - set(schema.catalogue().names) - {"fingerprint"}
+        plain |= (
+            {name + side.removeprefix("_err"): value for side in ERRORS} if name.endswith("_err") else {name: value}
+        )
+    unknown = plain.keys() - set(schema.catalogue().names) - {f"given.{name}" for name in schema.measured_inputs()}
     if unknown:
         raise KeyError(f"no such input: {', '.join(sorted(unknown))}")
     return plain
-
-
-def _numbers(rows: Sequence[Mapping[str, Any]], name: str) -> Array:
-    return np.array([row.get(name, np.nan) for row in rows], dtype=float)
-
-
-def _texts(rows: Sequence[Mapping[str, Any]], name: str, blank: str = "") -> Array:
-    return np.array([row.get(name, blank) for row in rows], dtype=object)

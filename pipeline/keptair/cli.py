@@ -8,11 +8,12 @@ import shutil
 import signal
 import sys
 from collections.abc import Sequence
+from pathlib import Path
 from types import FrameType
 from typing import NoReturn
 
 from keptair import __version__
-from keptair.errors import KeptairError, StoppedError
+from keptair.errors import KeptairError, OutputError, StoppedError, UsageError
 
 # Everything else is imported where it is used: the help has to be there at once.
 
@@ -124,6 +125,34 @@ def _targets(options: argparse.Namespace) -> int:
     return 0
 
 
+def _map(options: argparse.Namespace) -> int:
+    from keptair.catalogue.proposing import propose
+    from keptair.rendering import as_json
+
+    proposal = propose(options.catalogue)
+    print(as_json(proposal.as_dict()) if options.json else proposal.toml, end="\n" if options.json else "")
+    return 0
+
+
+def _trace(options: argparse.Namespace) -> int:
+    from keptair.trace import rendering, worked_sheet
+
+    shown = {"text": rendering.as_text, "markdown": rendering.as_markdown, "json": rendering.as_json}
+    sheet = worked_sheet(options.planet, options.run)
+    print(shown["json" if options.json else options.format](sheet).rstrip("\n"))
+    return 0
+
+
+def _verify(options: argparse.Namespace) -> int:
+    from keptair.rendering import as_json, verification
+    from keptair.settings import Settings
+    from keptair.verification import verify
+
+    outcomes = verify(Settings.read(options.settings), options.bodies)
+    print(as_json({"bodies": [one.as_dict() for one in outcomes]}) if options.json else verification(outcomes))
+    return 0 if all(one.passed for one in outcomes) else 1
+
+
 def _columns(options: argparse.Namespace) -> int:
     from keptair.rendering import data_dictionary
 
@@ -135,7 +164,18 @@ def _settings(options: argparse.Namespace) -> int:
     from keptair.rendering import settings_as_toml
     from keptair.settings import Settings
 
-    print(settings_as_toml(Settings.read(options.settings)))
+    toml = settings_as_toml(Settings.read(options.settings))
+    if options.write is None:
+        print(toml)
+        return 0
+    try:
+        with options.write.open("x", encoding="utf-8") as file:
+            file.write(toml + "\n")
+    except FileExistsError:
+        raise UsageError(f"{options.write}: is there already; it is left as it is", hint="another name") from None
+    except OSError as error:
+        raise OutputError(f"{options.write}: cannot be written ({error.strerror})") from None
+    print(options.write)
     return 0
 
 
@@ -180,8 +220,28 @@ def _parser() -> argparse.ArgumentParser:
         help="only these verdicts, such as secondary undecided",
     )
     targets.add_argument("--top", type=int, default=20, metavar="N", help="how many planets (20)")
-    targets.add_argument("--sort", choices=["priority", "tsm", "esm"], default="priority", help="strongest first")
+    targets.add_argument(
+        "--sort", choices=["priority", "tsm", "esm", "decisive"], default="priority", help="strongest first"
+    )
     targets.add_argument("--format", choices=["table", "csv", "json"], default="table", help="how to print them")
+
+    column_map = commands.add_parser("map", help="propose a column map for a catalogue, as TOML")
+    column_map.set_defaults(command=_map)
+    column_map.add_argument("catalogue", metavar="CATALOGUE", help="as for run")
+    column_map.add_argument("--json", action="store_true", help="the guesses with reason and confidence, as JSON")
+
+    trace = commands.add_parser("trace", help="the worked sheet of one planet: every step, value, formula and source")
+    trace.set_defaults(command=_trace)
+    trace.add_argument("planet", metavar="PLANET", help="its planet_id")
+    trace.add_argument("run", metavar="RUN", help="a run's folder, or the folder of runs for its latest")
+    trace.add_argument("--format", choices=["text", "markdown", "json"], default="text", help="how to print it")
+    trace.add_argument("--json", action="store_true", help="the same as --format json")
+
+    verify = commands.add_parser("verify", help="the Solar System through your settings, expected against obtained")
+    verify.set_defaults(command=_verify)
+    verify.add_argument("--settings", metavar="TOML", help="settings that differ from the defaults")
+    verify.add_argument("--bodies", type=Path, metavar="TOML", help="bodies of your own, beside those built in")
+    verify.add_argument("--json", action="store_true", help="the same as JSON")
 
     columns = commands.add_parser("columns", help="the data dictionary")
     columns.set_defaults(command=_columns)
@@ -190,4 +250,5 @@ def _parser() -> argparse.ArgumentParser:
     settings = commands.add_parser("settings", help="every setting, its value, what it does and where it came from")
     settings.set_defaults(command=_settings)
     settings.add_argument("--settings", metavar="TOML", help="settings that differ from the defaults")
+    settings.add_argument("--write", type=Path, metavar="FILE", help="start a settings file with them")
     return parser

@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 import sys
 import textwrap
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from typing import TYPE_CHECKING, Any
 
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from keptair.runs.running import Progress, Run
     from keptair.settings import Settings
     from keptair.tables.schema import Table
+    from keptair.verification import Outcome
 
 WIDTH = 80
 
@@ -53,6 +54,24 @@ def closing_summary(run: Run) -> str:
     wrapped = [part for line in lines for part in textwrap.wrap(line, WIDTH, subsequent_indent="  ")]
     found = [f"table   {run.path / 'planets.parquet'}", f"report  {run.path / 'report.html'}"]
     return "\n".join([*wrapped, *found, f"{run.manifest['seconds']['total']:.1f} s"])
+
+
+def verification(outcomes: Sequence[Outcome]) -> str:
+    """A line for each body of the Solar System, and how many passed."""
+    lines = [f"{'body':10} {'expected':24} {'obtained':11} {'because of':20} {'P(air)':>6}"]
+    for one in outcomes:
+        probability = one.envelope_probability if one.obtained == "envelope" else one.secondary_probability
+        mark = "" if one.passed else "  <- not as expected"
+        expected = " or ".join(one.expected)
+        lines.append(f"{one.body:10} {expected:24} {one.obtained:11} {one.reason:20} {probability:6.2f}{mark}")
+    passed = sum(one.passed for one in outcomes)
+    lines += [
+        "",
+        f"{passed} of {len(outcomes)} bodies as expected.",
+        "P(air): share of draws that keep a secondary air; for an envelope, of those",
+        "lighter than rock.",
+    ]
+    return "\n".join(lines)
 
 
 def data_dictionary(name: str | None) -> str:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import tomllib
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from pathlib import Path
 from typing import Annotated, Any, Literal
 
@@ -64,6 +64,10 @@ class Outcome:
     @property
     def passed(self) -> bool:
         return self.obtained in self.expected
+
+    def as_dict(self) -> dict[str, Any]:
+        """Ready for JSON."""
+        return {**asdict(self), "passed": self.passed}
 
 
 def verify(settings: Settings, bodies_file: Path | None = None) -> list[Outcome]:

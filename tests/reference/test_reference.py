@@ -4,9 +4,9 @@ import copy
 
 import numpy as np
 import pytest
-from handmade import make_batch, solar_system
 from pydantic import ValidationError
 
+from handmade import make_batch, solar_system
 from keptair import reference, stages
 from keptair.errors import SettingsError
 from keptair.reference.models import Background, Gas

@@ -7,9 +7,9 @@ from importlib import import_module
 import astropy.units as u
 import numpy as np
 import pytest
-from handmade import make_batch, solar_system
 
 import keptair.physics
+from handmade import make_batch, solar_system
 from keptair import stages
 from keptair.settings import Settings
 from keptair.tables import dictionary, flags, schema

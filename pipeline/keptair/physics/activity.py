@@ -26,8 +26,8 @@ def saturation_age(
 
     Notes
     -----
-    A power law through the Sun, early M dwarfs (0.24 Gyr, Loyd et al. 2021, doi:10.3847/1538-4357/abc68e) and
-    0.09 M☉ (3.1 Gyr, Birky et al. 2021, arXiv:2103.13427).
+    A power law through the Sun, early M dwarfs (0.24 Gyr, Loyd et al. 2021, arXiv:2011.10158) and 0.09 M☉
+    (3.1 Gyr, Birky et al. 2021, RNAAS 5, 122).
 
     Examples
     --------

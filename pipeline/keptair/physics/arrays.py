@@ -1,4 +1,4 @@
-"""The type every formula takes and gives: arrays that broadcast; plain numbers serve as arrays of no dimension."""
+"""The type every formula takes and gives: arrays that broadcast; at run time plain numbers serve as well."""
 
 from typing import Any, TypeAlias
 

@@ -115,7 +115,7 @@ def silicate_radius(planet_mass: Numbers) -> Numbers:
     --------
     At one Earth mass, by the fit's own constant:
 
-    >>> round(silicate_radius(5.97217e24) / 6.3781e6, 2)
+    >>> float(round(silicate_radius(5.97217e24) / 6.3781e6, 2))
     1.07
     """
     growing = 1.07 * (planet_mass / EARTH_MASS) ** (1 / 3.7)

@@ -111,7 +111,8 @@ def mass_from_luminosity(star_luminosity: Numbers) -> Numbers:
 
     Notes
     -----
-    Common practice; dwarfs only. 0.89–1.04 of the mean dwarf sequence.
+    Common practice; dwarfs only. Within 0.84–1.04 of the mean dwarf sequence of Pecaut & Mamajek 2013,
+    doi:10.1088/0067-0049/208/1/9, down to M8; then too light (0.67 at L0).
 
     Examples
     --------

@@ -103,8 +103,9 @@ def _row(column: schema.Column) -> str:
 def _formulas() -> Iterator[str]:
     by_function: dict[str, list[str]] = {}
     sources: dict[str, list[str]] = {}
-    for name in ("planets", "gases"):
-        for column in _distinct(schema.table(name)):  # type: ignore[arg-type]
+    names: tuple[schema.TableName, ...] = ("planets", "gases")
+    for name in names:
+        for column in _distinct(schema.table(name)):
             if column.derived_by:
                 shown = column.template if "{gas}" in column.template else column.name
                 by_function.setdefault(column.derived_by, []).append(f"`{name}.{shown}`")

@@ -167,7 +167,6 @@ def _published_inputs(entries: list[dict[str, Any]]) -> list[Column]:
             continue
         inherited = {"type": "number", "unit": entry.get("unit", ""), "ucd": entry["ucd"]}
         settled = {"stage": entry.get("stage", entries[0]["stage"])}
-        inherited |= {f"constraints.{key}": bound for key, bound in entry.get("constraints", {}).items()}
         columns.append(_fill_in(inherited | entries[0] | settled, entry["name"], values))
         for companion in companions:
             unit = {"unit": entry.get("unit", "")} if companion["type"] == "number" else {}
