@@ -244,4 +244,29 @@ CHECKS = [
         "W m-2",
         absolute=0.5,
     ),
+    Check(
+        "The five bands of the solar-type stars add up to the Sun's own flux",
+        f"{RIBAS_SUN}: 4.64 erg cm-2 s-1 at 4.56 Gyr",
+        4.64,
+        lambda: 1e3 * SOLAR_CONSTANT * activity.ribas_xuv_share(4.56),
+        "erg cm-2 s-1",
+        relative=0.01,
+    ),
+    Check(
+        "The Sun's X-rays bring the extreme ultraviolet that is seen with them",
+        "X-rays 10^27.35 erg/s, Judge et al. 2003, doi:10.1086/376405 (value from memory); 4.58 mW m-2 of 5-105 nm at "
+        "F10.7 = 140, EUVAC, Richards et al. 1994, doi:10.1029/94JA00518",
+        4.58e-3,
+        lambda: activity.extreme_ultraviolet(10**20.35) / (4 * np.pi * ASTRONOMICAL_UNIT**2),
+        "W m-2",
+        factor=2.0,
+    ),
+    Check(
+        "A measured Sun of a third of its age is as bright as the young suns of the survey",
+        f"{RIBAS_SUN}: their 29.7 τ^-1.23 erg cm-2 s-1, from 4.64 now",
+        29.7 * 1.523**-1.23,
+        lambda: activity.traced_back_luminosity(4.64, 4.57, 4.57 / 3, 1e9),
+        "erg cm-2 s-1",
+        relative=0.05,
+    ),
 ]

@@ -106,11 +106,11 @@ class ColumnMap(_Part):
             column_map = cls.model_validate(values)
         except ValidationError as error:
             problems = [_sentence(problem, lines) for problem in error.errors()]
-            raise ColumnMapError(f"{name}: {_count(problems)}", problems, "keptair map CATALOGUE") from None
+            raise ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair map CATALOGUE") from None
         column_map._name, column_map._lines = name, lines
         problems = column_map._mistakes()
         if problems:
-            raise ColumnMapError(f"{name}: {_count(problems)}", problems, "keptair columns catalogue")
+            raise ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair columns catalogue")
         return column_map
 
     def as_dict(self) -> dict[str, Any]:
@@ -200,7 +200,8 @@ def _written(value: object) -> str:
     )
 
 
-def _count(problems: list[str]) -> str:
+def cannot_be_used(problems: list[str]) -> str:
+    """The summary of an error about a map."""
     return f"the column map cannot be used ({len(problems)} problem{'s' if len(problems) > 1 else ''})"
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import io
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -14,35 +15,35 @@ from keptair.catalogue.streams import Readable, TableText, encoding_of
 from keptair.catalogue.table import Block, RawTable
 from keptair.errors import CatalogueError
 
-DELIMITERS = (",", "\t", ";", "|")
+DELIMITERS = {",": "CSV", "\t": "TSV", ";": "text with semicolons", "|": "text with bars", " ": "text with blanks"}
 BLOCK = 8 << 20  # bytes parsed together; a row must fit into one block
 
 
-def open_delimited(path: Path, comment: str) -> RawTable:
-    """The table of a text file whose first line that is no comment names the columns."""
+def open_delimited(path: Path, comment: str, delimiter: str = "") -> RawTable:
+    """The table of a text file whose first line that is no comment names the columns; the delimiter shows there."""
     encoding = encoding_of(path)
     header, _ = TableText(path, encoding, comment).first_record()
     if not header.strip():
         raise CatalogueError(f"{path.name}: the file is empty")
     text = header.decode("utf-8", errors="replace").rstrip("\r\n")
-    delimiter = delimiter_of(text)
+    delimiter = delimiter or delimiter_of(text)
     names = tuple(name.strip() for name in cells_of(text, delimiter))
     reader = _Reader(path, encoding, comment, header, delimiter, len(names))
     remarks = [] if encoding == "utf-8" else [f"the file is not UTF-8; it was read as {encoding}"]
-    return RawTable("delimited text", names, ("",) * len(names), reader.blocks, remarks)
+    return RawTable(DELIMITERS[delimiter], names, ("",) * len(names), reader.blocks, remarks)
 
 
 def delimiter_of(header: str) -> str:
     """The delimiter that stands most often in the header, outside quotes; comma where there is none."""
     bare = "".join(header.split('"')[::2])
-    return max(DELIMITERS, key=bare.count)
+    return max((mark for mark in DELIMITERS if mark != " "), key=bare.count)
 
 
 def cells_of(line: str, delimiter: str) -> list[str]:
     """The cells of one record."""
     limit = csv.field_size_limit(max(csv.field_size_limit(), len(line) + 1))
     try:
-        return next(csv.reader([line], delimiter=delimiter, strict=False), [])
+        return next(csv.reader(io.StringIO(line, newline=""), delimiter=delimiter), [])
     finally:
         csv.field_size_limit(limit)
 

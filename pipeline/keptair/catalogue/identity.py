@@ -13,24 +13,42 @@ from keptair.tables import rules, schema
 
 Array = NDArray[Any]
 Rank = tuple[float, int, str, int]
+BLANKS_AND_HYPHENS = dict.fromkeys(map(ord, " \t\u00a0_-\u2010\u2011\u2012\u2013\u2014\u2212"))
 
 
 class Identifiers:
-    """All identifiers of a catalogue in eight bytes each: enough to know which may stand there twice."""
+    """All identifiers of a catalogue in a few bytes each: enough to know which may stand there twice."""
 
     def __init__(self) -> None:
-        self._hashes: list[NDArray[np.int64]] = []
+        nothing = np.zeros(0, dtype=np.int64)
+        self._rows, self._hashes, self._plain_hashes = [nothing], [nothing], [nothing]
 
-    def add(self, identifiers: Array) -> None:
-        named = [identifier for identifier in identifiers if identifier]
-        self._hashes.append(np.fromiter(map(hash, named), dtype=np.int64, count=len(named)))
+    def add(self, rows: NDArray[np.int64], identifiers: Array) -> None:
+        named = identifiers != ""
+        names = identifiers[named]
+        self._rows.append(rows[named])
+        self._hashes.append(np.fromiter(map(hash, names), dtype=np.int64, count=len(names)))
+        plain = (hash(_plain(name)) for name in names)
+        self._plain_hashes.append(np.fromiter(plain, dtype=np.int64, count=len(names)))
 
     def repeated(self) -> set[int]:
         """Hashes that occur more than once. Different names may share one; who reads on compares the names."""
-        if not self._hashes:
-            return set()
         values, counts = np.unique(np.concatenate(self._hashes), return_counts=True)
         return set(values[counts > 1].tolist())
+
+    def remarks(self) -> list[str]:
+        """Different names that are the same but for case, blanks and hyphens: perhaps one planet, kept as two."""
+        rows, hashes = np.concatenate(self._rows), np.concatenate(self._hashes)
+        _, first = np.unique(hashes, return_index=True)  # each name once
+        plain = np.concatenate(self._plain_hashes)[first]
+        order = np.argsort(plain, kind="stable")
+        alike = np.flatnonzero(np.diff(plain[order]) == 0)
+        if not len(alike):
+            return []
+        pairs = [sorted((int(rows[first[order[place]]]), int(rows[first[order[place + 1]]]))) for place in alike]
+        one, other = min(pairs)
+        count = f"{len(pairs)} names differ" if len(pairs) > 1 else "1 name differs"
+        return [f"{count} from another only in case, blanks or hyphens, first in rows {one} and {other}"]
 
 
 class Duplicates:
@@ -61,6 +79,10 @@ class Duplicates:
             return np.zeros(len(rows), dtype=np.int64)
         places = np.minimum(np.searchsorted(self._gone, rows), len(self._gone) - 1)
         return np.where(self._gone[places] == rows, self._stays[places], 0)
+
+
+def _plain(name: str) -> str:
+    return name.casefold().translate(BLANKS_AND_HYPHENS)
 
 
 def _candidates(piece: Mapping[str, Array], repeated: set[int]) -> NDArray[np.int64]:

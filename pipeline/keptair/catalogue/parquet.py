@@ -9,8 +9,10 @@ from typing import Any
 
 import numpy as np
 
+from keptair.catalogue.ecsv import description, units_of
 from keptair.catalogue.showing import quoted, shown
 from keptair.catalogue.table import Block, RawTable
+from keptair.catalogue.votable import fields_of
 from keptair.errors import CatalogueError
 
 ROWS = 1 << 16  # in one block
@@ -32,7 +34,8 @@ def open_parquet(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every 
     with _readable(files[0]) as parquet:
         schema = parquet.schema_arrow
     names = tuple(name for name in schema.names if not _is_mask(name, schema))
-    units = tuple(_unit(schema, name) for name in names)
+    described = _described_units(schema)
+    units = tuple(_unit(schema, name) or described.get(name, "") for name in names)
 
     def blocks(positions: tuple[int, ...], remarks: list[str]) -> Iterator[Block]:  # noqa: ARG001
         row = 1
@@ -60,7 +63,7 @@ def _readable(file: Path) -> Iterator[Any]:
     try:
         with pq.ParquetFile(file, thrift_string_size_limit=64 << 20, thrift_container_size_limit=1_000_000) as parquet:
             yield parquet
-    except (pa.ArrowException, OSError, MemoryError, OverflowError) as error:
+    except (pa.ArrowException, OSError, MemoryError, OverflowError, ValueError) as error:
         raise CatalogueError(f"{file.name}: cannot be read as Parquet ({shown(str(error), 160)})") from None
 
 
@@ -77,6 +80,17 @@ def _unit(schema: Any, name: str) -> str:
     return (metadata.get(b"unit") or metadata.get(b"units") or b"").decode("utf-8", errors="replace")
 
 
+def _described_units(schema: Any) -> dict[str, str]:
+    """The units in the footer: a VOTable without data, or astropy's own YAML."""
+    metadata = schema.metadata or {}
+    units = {name: unit for name, unit in fields_of(metadata.get(b"IVOA.VOTable-Parquet.content", b"")) if unit}
+    try:
+        text = metadata.get(b"table_meta_yaml", b"").decode("utf-8", errors="replace")
+        return units_of(description(text, "footer")) | units
+    except CatalogueError:  # a footer nobody can read says nothing
+        return units
+
+
 def _column(batch: Any, name: str, file: Path) -> Any:
     import pyarrow as pa
     import pyarrow.compute as pc
@@ -86,7 +100,20 @@ def _column(batch: Any, name: str, file: Path) -> Any:
         column = pc.cast(column, column.type.value_type)
     if pa.types.is_nested(column.type):
         raise CatalogueError(f"{file.name}: the column {quoted(name)} holds lists or structures, not one value a row")
+    if pa.types.is_string(column.type) or pa.types.is_large_string(column.type):
+        column = _text_or_bytes(column)
     mask = f"{name}.mask"
     if mask in batch.schema.names:
         column = pc.if_else(pc.fill_null(batch.column(mask), False), None, column)
+    return column
+
+
+def _text_or_bytes(column: Any) -> Any:
+    """Text that is not the UTF-8 it should be, as bytes."""
+    import pyarrow as pa
+
+    try:
+        column.validate(full=True)
+    except pa.ArrowInvalid:
+        return column.cast(pa.binary())
     return column

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import hashlib
+import shutil
+import weakref
 from collections import Counter
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
@@ -12,8 +14,8 @@ from typing import Any, Literal
 import numpy as np
 
 from keptair.batch import Array, Batch
-from keptair.catalogue import cells, converting, filters
-from keptair.catalogue.columns import ColumnMap, looked_up
+from keptair.catalogue import cells, converting, fetching, filters
+from keptair.catalogue.columns import ColumnMap, cannot_be_used, looked_up
 from keptair.catalogue.formats import open_table
 from keptair.catalogue.identity import Duplicates, Identifiers
 from keptair.catalogue.parquet import files_of
@@ -76,29 +78,34 @@ class Catalogue:
 def open_catalogue(
     source: str | Path, column_map: str | Path | Mapping[str, Any] | ColumnMap | None = None
 ) -> Catalogue:
-    """Read the map, recognise the format, sweep the file once; everything wrong with the map at once."""
-    path = Path(source)
-    if not path.exists():
-        raise CatalogueError(f"{path}: there is no such file")
+    """Read the map, fetch what lies elsewhere, recognise the format, sweep the file once.
+
+    Everything wrong with the map is told at once. What is fetched stays as long as the catalogue is in use.
+    """
     wanted = ColumnMap.read(column_map)
+    if not fetching.is_elsewhere(str(source)):
+        return _opened(Path(source), str(source), wanted)
+    with fetching.temporary_folder() as folder:
+        path = fetching.fetch(str(source), folder)
+        catalogue = _opened(path, fetching.without_secrets(str(source)), wanted)
+    weakref.finalize(catalogue, shutil.rmtree, folder, ignore_errors=True)
+    return catalogue
+
+
+def _opened(path: Path, source: str, wanted: ColumnMap) -> Catalogue:
     try:
+        if not path.exists():
+            raise CatalogueError(f"{path}: there is no such file")
         state = _state_of(path)
         digest = _sha256(path)
         table = open_table(path, wanted.file.comment)
         plan = resolve(table, wanted)
-        if not plan.identifier.values and not any("[columns.planet_id]" in problem for problem in plan.problems):
-            raise _no_identifier(path, table, plan)
-        sweep = _Sweep(table, plan)
-        problems = [*plan.problems, *sweep.problems()]
-        if problems:
-            count = f"{len(problems)} problem{'s' if len(problems) > 1 else ''}"
-            summary = f"{path.name}: the column map cannot be used ({count})"
-            raise ColumnMapError(summary, problems, f"keptair map {path.name}")
+        sweep = _swept(path, table, plan)
         duplicates = sweep.duplicates()
     except OSError as error:
         raise CatalogueError(f"{path}: cannot be read ({error.strerror or error})") from None
     return Catalogue(
-        source=str(source),
+        source=source,
         bytes=sum(size for _, size, _ in state),
         sha256=digest,
         format=table.format,
@@ -106,13 +113,25 @@ def open_catalogue(
         carried=sweep.carried(),
         rows_read=sweep.read,
         rows_filtered=sweep.filtered,
-        remarks=[*table.remarks, *plan.remarks, *sweep.remarks],
+        remarks=[*table.remarks, *plan.remarks, *sweep.remarks, *sweep.names.remarks()],
         _path=path,
         _table=table,
         _plan=plan,
         _duplicates=duplicates,
         _state=state,
     )
+
+
+def _swept(path: Path, table: RawTable, plan: Plan) -> _Sweep:
+    """The first look at every row; raises what is wrong with the map, all of it."""
+    if not plan.identifier.values and not any("[columns.planet_id]" in problem for problem in plan.problems):
+        raise _no_identifier(path, table, plan)
+    sweep = _Sweep(table, plan)
+    problems = [*plan.problems, *sweep.problems()]
+    if problems:
+        summary = f"{path.name}: {cannot_be_used(problems)}"
+        raise ColumnMapError(summary, problems, f"keptair map {path.name}")
+    return sweep
 
 
 class _Sweep:
@@ -124,7 +143,7 @@ class _Sweep:
         self.read = 0
         self.filtered = 0
         self.remarks: list[str] = []
-        self.identifiers = Identifiers()
+        self.names = Identifiers()
         self._kind_words: dict[str, Counter[str]] = {number.name: Counter() for number in plan.of_kinds}
         self._texts: set[str] = set()  # carried columns that hold something else than numbers
         positions = {*plan.identifier.values, *plan.carried.values()}
@@ -137,7 +156,7 @@ class _Sweep:
         kept = block.where(filters.kept(block, self.plan))
         self.filtered += len(block.rows) - len(kept.rows)
         sound = kept.where(kept.wrong_cells == 0)
-        self.identifiers.add(converting.read_text(sound, self.plan.identifier, len(sound.rows)))
+        self.names.add(sound.rows, converting.read_text(sound, self.plan.identifier, len(sound.rows)))
         for number in self.plan.of_kinds:
             assert number.kind is not None
             words = cells.counts(cells.texts(sound.cells[number.kind], number.missing))
@@ -162,7 +181,7 @@ class _Sweep:
 
     def duplicates(self) -> Duplicates:
         """A second look, only at rows whose identifier may stand there twice, and only if there are any."""
-        repeated = self.identifiers.repeated()
+        repeated = self.names.repeated()
         if not repeated:
             return Duplicates((), repeated)
         blocks = _kept_blocks(self.table, self.plan, self.plan.canonical_positions)

@@ -225,7 +225,7 @@ class _Resolver:
                 self._complain_once(f"{self.map.place('columns', name, 'unit')} = {quoted(unit)}: {error}")
             else:
                 column = quoted(self.table.names[position])
-                self._complain_once(f"the column {column} has the unit {quoted(unit)}: {error} for {name}")
+                self._complain_once(f"the column {column}, read as {name}, has the unit {quoted(unit)}: {error}")
             return Conversion()
 
     def _stated(self, name: str, entry: ColumnEntry) -> Conversion:
@@ -247,7 +247,7 @@ class _Resolver:
             return Source(position, error_conversion(unit, name, of_value))
         except UnitError as error:
             column = quoted(self.table.names[position])
-            self._complain_once(f"the column {column} has the unit {quoted(unit)}: {error} for the errors of {name}")
+            self._complain_once(f"the column {column}, an error of {name}, has the unit {quoted(unit)}: {error}")
             return Source(position)
 
     def _complain_once(self, problem: str) -> None:

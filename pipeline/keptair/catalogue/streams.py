@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import codecs
 import io
+import tempfile
 import zlib
 from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from keptair.errors import CatalogueError
@@ -17,11 +19,15 @@ INFLATION_FLOOR = 100 << 20  # below this size nobody is hurt, whatever the rati
 GZIP_MARK = b"\x1f\x8b"
 
 
+def is_gzip(path: Path) -> bool:
+    with path.open("rb") as file:
+        return file.read(len(GZIP_MARK)) == GZIP_MARK
+
+
 def chunks(path: Path) -> Iterator[bytes]:
     """The file's bytes, inflated if it is a gzip file."""
+    zipped = is_gzip(path)
     with path.open("rb") as file:
-        zipped = file.read(len(GZIP_MARK)) == GZIP_MARK
-        file.seek(0)
         raw = iter(lambda: file.read(CHUNK), b"")
         yield from inflated(raw, path) if zipped else raw
 
@@ -51,6 +57,20 @@ def inflated(raw: Iterator[bytes], path: Path) -> Iterator[bytes]:
             waiting = member.unused_data.lstrip(b"\0") if member.eof else member.unconsumed_tail
     if not member.eof:
         raise CatalogueError(f"{path.name}: the gzip file ends too early; it was not copied whole")
+
+
+@contextmanager
+def inflated_copy(path: Path) -> Iterator[Path]:
+    """The file itself, or, of a gzip file, a temporary file that holds what it inflates to."""
+    if not is_gzip(path):
+        yield path
+        return
+    with tempfile.TemporaryDirectory(prefix="keptair-") as folder:
+        copy = Path(folder) / path.name.removesuffix(".gz")
+        with copy.open("wb") as file:
+            for chunk in chunks(path):
+                file.write(chunk)
+        yield copy
 
 
 def beginning(path: Path, size: int = 4096) -> bytes:

@@ -137,7 +137,11 @@ def in_series(kinetic: Numbers, supply: Numbers) -> Numbers:
     >>> float(in_series(2.0, 2.0))
     1.0
     """
-    return kinetic / np.maximum(kinetic + supply, np.finfo(float).tiny) * supply
+    total = np.asarray(kinetic + supply, dtype=float)
+    np.maximum(total, np.finfo(float).tiny, out=total)
+    np.divide(kinetic, total, out=total)
+    total *= supply
+    return total
 
 
 def carried_flux(wind: Numbers, supply: Numbers) -> Numbers:
@@ -167,4 +171,5 @@ def carried_flux(wind: Numbers, supply: Numbers) -> Numbers:
     >>> float(carried_flux(5.0, 0.0))
     5.0
     """
-    return np.maximum(0.0, wind + supply)
+    flux = np.asarray(wind + supply)
+    return np.maximum(flux, 0.0, out=flux)

@@ -257,6 +257,13 @@ def trace_jeans_flux(
     >>> bool(np.isclose(trace_jeans_flux(1 / (2 * SQRT_PI), 7.0, 11.0, 1.0, 1.0), plain, rtol=1e-14))
     True
     """
-    jeans = mass_in_u * np.asarray(unit_jeans)
-    exponent = (1 - mass_in_u / mean_mass_in_u) * np.asarray(upper_scale_heights) - jeans
-    return carrier * (1 + jeans) * np.exp(np.maximum(exponent, SMALLEST_EXPONENT)) / np.sqrt(mass_in_u)
+    # in place: this is the innermost loop, and a fresh array costs more than a pass over an old one
+    flux = np.asarray(mass_in_u * np.asarray(unit_jeans))
+    exponent = np.asarray((1 - mass_in_u / mean_mass_in_u) * np.asarray(upper_scale_heights) - flux)
+    np.maximum(exponent, SMALLEST_EXPONENT, out=exponent)
+    np.exp(exponent, out=exponent)
+    flux += 1
+    flux *= exponent
+    flux *= carrier
+    flux *= 1 / np.sqrt(mass_in_u)
+    return flux

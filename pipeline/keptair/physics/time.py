@@ -29,7 +29,8 @@ def escape_time(column: Numbers, loss: Numbers) -> Numbers:
 
     Examples
     --------
-    Earth's air, 10 093 kg m⁻² (Trenberth & Smith 2005, doi:10.1175/JCLI-3299.1), at 3 kg/s of hydrogen (Catling & Zahnle 2009) over 5.1e14 m²:
+    Earth's air, 10 093 kg m⁻² (Trenberth & Smith 2005, doi:10.1175/JCLI-3299.1), at 3 kg/s of hydrogen (Catling &
+    Zahnle 2009) over 5.1e14 m²:
 
     >>> round(float(escape_time(10093.0, 3 / 5.1e14)))
     54

@@ -107,8 +107,9 @@ class Follower:
             wind = loss.energy / (self.background.lost_mass_share * self.air_mass)
             share = weight * self.air_mass / self.column
             for name, gas in self.gases.items():
-                kinetic, flux = self.trace(name, gas, loss, wind)
-                lost_gas[name] += share * flux
+                _, flux = self.trace(name, gas, loss, wind)
+                flux *= share
+                lost_gas[name] += flux
         made = {
             f"held.{self.key}": held,
             f"loss.{self.key}": loss.flux,
@@ -201,8 +202,10 @@ class Follower:
             loss.carrier, loss.unit_jeans, self.ground.upper_heights, gas.mass_u, self.background.upper_mass_u
         )
         supply = self.supply[name]
-        evaporating = diffusion.in_series(kinetic, supply) if gas.mass_u < self.background.mean_mass_u else kinetic
-        return kinetic, np.where(loss.outflow, diffusion.carried_flux(wind, supply), evaporating)
+        lighter = gas.mass_u < self.background.mean_mass_u
+        flux = diffusion.in_series(kinetic, supply) if lighter else kinetic.copy()
+        np.copyto(flux, diffusion.carried_flux(wind, supply), where=loss.outflow)
+        return kinetic, flux
 
 
 def inventory(batch: Batch, background: Background) -> Array:
