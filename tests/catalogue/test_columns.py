@@ -162,24 +162,28 @@ def test_all_mistakes_are_told_at_once_with_their_lines(write_csv: Write, tmp_pa
     ]
 
 
-def test_mistakes_that_need_no_file_are_told_at_once(tmp_path: Path) -> None:
+def test_mistakes_that_need_no_file_are_told_with_those_that_do(write_csv: Write, tmp_path: Path) -> None:
+    path = write_csv("planet_id,tr,Rp,k\na,1,1,x\n")
     column_map = tmp_path / "map.toml"
     column_map.write_text(
         '[columns.planet_radius]\nfrom = "Rp"\n'
         '[columns.transits]\nfrom = "tr"\nunit = "K"\n'
+        '[columns.transits.words]\n1 = "ja"\n'
         '[columns.planet_radius_rearth]\nfrom = "Rp"\nkind = "k"\n'
         '[columns.planet_radius_rearth.kinds]\nx = "minimum"\n'
+        '[columns.updated]\nfrom = "changed"\ndate = "%"\n'
         "[constants]\nbond_albedo = 2\nj_mag = true\nsize = 3\n"
     )
-    with pytest.raises(ColumnMapError) as failure:
-        ColumnMap.read(column_map)
-    assert failure.value.problems == [
+    assert problems(path, column_map) == [
         "line 1 [columns.planet_radius]: no such canonical column; planet_radius_rearth was meant?",
         "line 5 [columns.transits] unit: means nothing for transits; possible are from, missing, words",
-        'line 10 [columns.planet_radius_rearth.kinds] x = "minimum": should be measured or relation',
-        "line 12 [constants] bond_albedo = 2: out of bounds, from 0 to 0.99",
-        "line 13 [constants] j_mag = true: a number is needed",
-        "line 14 [constants] size: no such canonical column",
+        'line 7 [columns.transits.words] 1 = "ja": should be "", "yes", "no"',
+        'line 12 [columns.planet_radius_rearth.kinds] x = "minimum": should be "measured", "relation"',
+        'line 15 [columns.updated] date = "%": no pattern of dates; 24/12/31 is "%y/%m/%d"',
+        "line 17 [constants] bond_albedo = 2: out of bounds, from 0 to 0.99",
+        "line 18 [constants] j_mag = true: a number is needed",
+        "line 19 [constants] size: no such canonical column",
+        'line 14 [columns.updated] from = "changed": no such column; the file has "planet_id", "tr", "Rp", "k"',
     ]
 
 
@@ -217,3 +221,9 @@ def test_a_thousand_unknown_words_are_not_all_printed(write_csv: Write) -> None:
     found = problems(path, columns(planet_mass_mearth=entry))
     assert len(found) == 9
     assert "and 992 more words; is it the right column?" in found[-1]
+
+
+def test_an_unreadable_limit_beside_a_good_value_does_no_harm(write_csv: Write) -> None:
+    path = write_csv("id,Mp,max\na,3,none yet\nb,,none yet\n")
+    batch = read(path, columns(planet_mass_mearth={"from": "Mp", "upper": "max"}))
+    assert batch.columns["unreadable.planet_mass_mearth"].tolist() == ["", "none yet"]

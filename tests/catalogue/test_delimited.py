@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import gzip
+import os
 from collections.abc import Callable
 from pathlib import Path
 
@@ -151,3 +152,18 @@ def test_a_gzip_bomb_is_stopped(write_csv: Write, monkeypatch: pytest.MonkeyPatc
 def test_what_is_no_table_is_named(write_csv: Write, content: bytes, reason: str) -> None:
     with pytest.raises(CatalogueError, match=reason):
         open_catalogue(write_csv(content))
+
+
+def test_a_line_without_end_is_stopped_before_it_fills_the_memory(
+    write_csv: Write, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("keptair.catalogue.streams.LONGEST_LINE", 2 << 20)
+    for text in ("x" * (5 << 20), HEADER + "a,x,1\n" + "y" * (5 << 20)):
+        with pytest.raises(CatalogueError, match="a line is longer than 2 MB"):
+            open_catalogue(write_csv(text))
+
+
+def test_a_pipe_is_refused_before_anything_is_read_from_it(tmp_path: Path) -> None:
+    os.mkfifo(tmp_path / "pipe.csv")
+    with pytest.raises(CatalogueError, match="is neither a file nor a folder"):
+        open_catalogue(tmp_path / "pipe.csv")

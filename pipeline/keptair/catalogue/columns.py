@@ -5,13 +5,14 @@ from __future__ import annotations
 import re
 import tomllib
 from collections.abc import Mapping
+from datetime import datetime
 from difflib import get_close_matches
 from pathlib import Path
 from typing import Annotated, Any, Literal
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, PrivateAttr, StrictInt, StrictStr, ValidationError
 
-from keptair.catalogue.showing import quoted, shown
+from keptair.catalogue.showing import listed, quoted, shown
 from keptair.errors import ColumnMapError
 from keptair.tables import rules, schema
 
@@ -77,7 +78,6 @@ class ColumnMap(_Part):
     columns: dict[str, ColumnEntry] = {}
     constants: dict[str, Word] = {}
 
-    _name: str = PrivateAttr("")
     _lines: dict[tuple[str, ...], int] = PrivateAttr(default_factory=dict)
 
     @classmethod
@@ -107,10 +107,7 @@ class ColumnMap(_Part):
         except ValidationError as error:
             problems = [_sentence(problem, lines) for problem in error.errors()]
             raise ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair map CATALOGUE") from None
-        column_map._name, column_map._lines = name, lines
-        problems = column_map._mistakes()
-        if problems:
-            raise ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair columns catalogue")
+        column_map._lines = lines
         return column_map
 
     def as_dict(self) -> dict[str, Any]:
@@ -121,13 +118,13 @@ class ColumnMap(_Part):
         """Where something stands, for a message: `line 7 [columns.planet_id] from`."""
         return _place(keys, self._lines)
 
-    def _mistakes(self) -> list[str]:
+    def mistakes(self) -> list[str]:
         """Everything wrong that can be seen without the file."""
         problems: list[str] = []
         known = {column.name: column for column in schema.inputs()}
         for name, entry in self.columns.items():
             if name in known:
-                problems += self._mistakes_of_entry(name, entry, known[name].type == "number")
+                problems += self._mistakes_of_entry(known[name], entry)
             else:
                 problems.append(f"{self.place('columns', name)}: {_no_such_input(name)}")
         for name, value in self.constants.items():
@@ -141,18 +138,22 @@ class ColumnMap(_Part):
                 problems += [f"{where} = {_written(value)}: {wrong}"] if wrong else []
         return problems
 
-    def _mistakes_of_entry(self, name: str, entry: ColumnEntry, number: bool) -> list[str]:
-        problems = []
-        allowed = (FOR_NUMBERS if number else FOR_TEXTS) + (FOR_KINDS if name in KINDS else ())
+    def _mistakes_of_entry(self, column: schema.Column, entry: ColumnEntry) -> list[str]:
+        problems, name = [], column.name
+        allowed = (FOR_NUMBERS if column.type == "number" else FOR_TEXTS) + (FOR_KINDS if name in KINDS else ())
         allowed += ("date",) if name == "updated" else ()
         for key in sorted(entry.model_fields_set - {"sources", "missing", *allowed}):
             reason = f"means nothing for {name}; possible are from, missing, {', '.join(allowed)}"
             problems.append(f"{self.place('columns', name, key)}: {reason}")
-        possible = KINDS[name][1] if name in KINDS else ()
-        for word, kind in entry.kinds.items():
-            if possible and kind not in possible:
-                where = self.place("columns", name, "kinds", word)
-                problems.append(f"{where} = {quoted(kind)}: should be {' or '.join(possible)}")
+        possible = {"kinds": KINDS[name][1] if name in KINDS else (), "words": column.enum}
+        for key, words in (("kinds", entry.kinds), ("words", entry.words)):
+            for word, ours in words.items():
+                if possible[key] and ours not in possible[key]:
+                    where = self.place("columns", name, key, word)
+                    problems.append(f"{where} = {quoted(ours)}: should be {listed(list(possible[key]))}")
+        if entry.date and not _is_date_pattern(entry.date):
+            where = self.place("columns", name, "date")
+            problems.append(f'{where} = {quoted(entry.date)}: no pattern of dates; 24/12/31 is "%y/%m/%d"')
         if entry.kinds and entry.kind is None:
             problems.append(f"{self.place('columns', name, 'kinds')}: say which column holds these words, kind = …")
         if name in KINDS and entry.kind is not None and KINDS[name][0] in self.columns:
@@ -174,6 +175,14 @@ def looked_up(word: str, words: Mapping[str, str]) -> str | None:
             return words[spelling]
     folded = {key.casefold(): value for key, value in words.items()}
     return folded.get(word.casefold(), words.get("*"))
+
+
+def _is_date_pattern(pattern: str) -> bool:
+    try:
+        datetime.strptime(datetime(2024, 12, 31).strftime(pattern), pattern)
+    except ValueError:
+        return False
+    return "%" in pattern
 
 
 def close_to(name: str, names: list[str], likeness: float = 0.6) -> str:

@@ -68,8 +68,6 @@ def read_number(block: Block, plan: NumberPlan, size: int) -> dict[str, Array]:
         found = _numbers(block, source.position, plan, strange, name)
         fresh = np.isnan(values) & ~np.isnan(found)
         values = np.where(fresh, source.conversion.values(found), values)
-    if name in strange:
-        strange[name] = np.where(np.isnan(values), strange[name], "").astype(object)
     bound = _bound(block, plan, size)
     for side, limit in (("upper", plan.upper), ("lower", plan.lower)):
         if limit is not None:
@@ -77,6 +75,8 @@ def read_number(block: Block, plan: NumberPlan, size: int) -> dict[str, Array]:
             fresh = np.isnan(values) & ~np.isnan(found)
             values = np.where(fresh, found, values)
             bound = np.where(fresh, side, bound).astype(object)
+    if name in strange:
+        strange[name] = np.where(np.isnan(values), strange[name], "").astype(object)
     columns: dict[str, Array] = {
         f"read.{name}": values,
         f"read.{name}_err_plus": _error(block, plan, plan.plus, values, +1, strange),

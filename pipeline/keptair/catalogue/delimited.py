@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from collections import deque
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -16,6 +17,7 @@ from keptair.catalogue.table import Block, RawTable
 from keptair.errors import CatalogueError
 
 DELIMITERS = {",": "CSV", "\t": "TSV", ";": "text with semicolons", "|": "text with bars", " ": "text with blanks"}
+ROWS = 1 << 16  # in one block, where they do not come parsed
 BLOCK = 8 << 20  # bytes parsed together; a row must fit into one block
 
 
@@ -69,14 +71,15 @@ class _Reader:
         valid = 0
         try:
             for batch in self._parse(rest, positions, ragged):
+                if not batch.num_rows:
+                    continue
                 rows = ragged.rows_of_valid(valid, batch.num_rows)
                 valid += batch.num_rows
                 cells = {position: batch.column(place) for place, position in enumerate(positions)}
                 yield ragged.merged(Block(rows, np.zeros(len(rows), dtype=np.int64), cells))
         except pa.ArrowInvalid as error:
             raise CatalogueError(f"{self.path.name}: {_sentence(error)}") from None
-        if ragged.waiting():
-            yield ragged.merged(Block.empty(positions))
+        yield from ragged.remaining()
         remarks += _remarks(lines)
 
     def _parse(self, rest: Iterator[bytes], positions: tuple[int, ...], ragged: _Ragged) -> Iterator[Any]:
@@ -110,46 +113,46 @@ class _Ragged:
     def __init__(self, positions: tuple[int, ...], delimiter: str) -> None:
         self.positions = positions
         self.delimiter = delimiter
-        self.numbers: list[int] = []  # of all seen so far
-        self.found: list[int] = []
-        self.cells: list[list[str]] = []
-        self.given = 0  # how many have left
+        self._left = 0  # how many have found their place
+        self._waiting: deque[tuple[int, int, str]] = deque()  # row number, cells found, text
 
     def note(self, row: Any) -> str:
-        cells = cells_of(row.text, self.delimiter)
-        self.numbers.append(row.number)
-        self.found.append(row.actual_columns)
-        self.cells.append([cells[place] if place < len(cells) else "" for place in self.positions])
+        self._waiting.append((row.number, row.actual_columns, row.text))
         return "skip"
-
-    def waiting(self) -> bool:
-        return self.given < len(self.numbers)
 
     def rows_of_valid(self, before: int, count: int) -> Any:
         """Row numbers of `count` good rows that follow `before` good ones."""
         ordinal = np.arange(before, before + count, dtype=np.int64)
-        good_before_bad = np.asarray(self.numbers, dtype=np.int64) - 1 - np.arange(len(self.numbers))
-        return ordinal + 1 + np.searchsorted(good_before_bad, ordinal, side="right")
+        numbers = np.fromiter((row[0] for row in self._waiting), dtype=np.int64, count=len(self._waiting))
+        good_before_bad = numbers - 1 - np.arange(self._left, self._left + len(numbers))
+        return ordinal + 1 + self._left + np.searchsorted(good_before_bad, ordinal, side="right")
 
     def merged(self, block: Block) -> Block:
-        """The block with the bad rows that are due put in their places."""
+        """The block with the bad rows that come before its last row put in their places."""
+        due = []
+        while self._waiting and self._waiting[0][0] < block.rows[-1]:
+            due.append(self._waiting.popleft())
+        return self._joined(block, due) if due else block
+
+    def remaining(self) -> Iterator[Block]:
+        """Blocks of the bad rows after the last good one."""
+        while self._waiting:
+            due = [self._waiting.popleft() for _ in range(min(ROWS, len(self._waiting)))]
+            yield self._joined(Block.empty(self.positions), due)
+
+    def _joined(self, block: Block, due: list[tuple[int, int, str]]) -> Block:
         import pyarrow as pa
 
-        last = block.rows[-1] if len(block.rows) else max(self.numbers, default=0)
-        due = slice(self.given, int(np.searchsorted(self.numbers, last, side="right")))
-        numbers = np.asarray(self.numbers[due], dtype=np.int64)
-        if not len(numbers):
-            return block
-        self.given = due.stop
-        rows = np.concatenate([block.rows, numbers])
-        wrong = np.concatenate([block.wrong_cells, np.asarray(self.found[due], dtype=np.int64)])
+        self._left += len(due)
+        rows = np.concatenate([block.rows, np.array([number for number, _, _ in due], dtype=np.int64)])
+        wrong = np.concatenate([block.wrong_cells, np.array([found for _, found, _ in due], dtype=np.int64)])
         order = np.argsort(rows)
-        cells = {}
-        for place, position in enumerate(self.positions):
-            extra = pa.array([row[place] for row in self.cells[due]], pa.string())
-            cells[position] = pa.concat_arrays([block.cells[position], extra]).take(pa.array(order))
-        self.cells[due] = [[] for _ in numbers]
-        return Block(rows[order], wrong[order], cells)
+        read = [cells_of(text, self.delimiter) for _, _, text in due]
+        columns = {}
+        for position in self.positions:
+            extra = pa.array([cells[position] if position < len(cells) else "" for cells in read], pa.string())
+            columns[position] = pa.concat_arrays([block.cells[position], extra]).take(pa.array(order))
+        return Block(rows[order], wrong[order], columns)
 
 
 def _remarks(lines: TableText) -> list[str]:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+from array import array
 from collections.abc import Iterable, Mapping
 from typing import Any
 
@@ -12,7 +14,7 @@ from keptair import fingerprint
 from keptair.tables import rules, schema
 
 Array = NDArray[Any]
-Rank = tuple[float, int, str, int]
+Rank = tuple[float, int, int, int]
 BLANKS_AND_HYPHENS = dict.fromkeys(map(ord, " \t\u00a0_-\u2010\u2011\u2012\u2013\u2014\u2212"))
 
 
@@ -38,16 +40,15 @@ class Identifiers:
 
     def remarks(self) -> list[str]:
         """Different names that are the same but for case, blanks and hyphens: perhaps one planet, kept as two."""
-        rows, hashes = np.concatenate(self._rows), np.concatenate(self._hashes)
-        _, first = np.unique(hashes, return_index=True)  # each name once
-        plain = np.concatenate(self._plain_hashes)[first]
-        order = np.argsort(plain, kind="stable")
-        alike = np.flatnonzero(np.diff(plain[order]) == 0)
+        _, first = np.unique(np.concatenate(self._hashes), return_index=True)  # each name once
+        rows, plain = np.concatenate(self._rows)[first], np.concatenate(self._plain_hashes)[first]
+        order = np.lexsort((rows, plain))
+        rows, plain = rows[order], plain[order]
+        alike = np.flatnonzero(plain[1:] == plain[:-1])
         if not len(alike):
             return []
-        pairs = [sorted((int(rows[first[order[place]]]), int(rows[first[order[place + 1]]]))) for place in alike]
-        one, other = min(pairs)
-        count = f"{len(pairs)} names differ" if len(pairs) > 1 else "1 name differs"
+        one, other = min((int(rows[place]), int(rows[place + 1])) for place in alike)
+        count = f"{len(alike)} names differ" if len(alike) > 1 else "1 name differs"
         return [f"{count} from another only in case, blanks or hyphens, first in rows {one} and {other}"]
 
 
@@ -55,20 +56,25 @@ class Duplicates:
     """The rows that go, and for each the row that stays: newest, then fullest, then smallest content hash."""
 
     def __init__(self, pieces: Iterable[Mapping[str, Array]], repeated: set[int]) -> None:
-        best: dict[str, Rank] = {}
-        seen: list[tuple[str, int]] = []
+        groups: dict[str, int] = {}  # identifier → its place in best
+        best: list[Rank] = []
+        seen_rows, seen_groups = array("q"), array("q")
         for piece in pieces:
             candidates = _candidates(piece, repeated)
             if not len(candidates):
                 continue
             chosen = {name: values[candidates] for name, values in piece.items()}
             for identifier, rank in zip(chosen["read.planet_id"], _ranks(chosen), strict=True):
-                seen.append((identifier, -rank[3]))
-                if identifier not in best or rank > best[identifier]:
-                    best[identifier] = rank
-        pairs = [(row, -best[identifier][3]) for identifier, row in seen if row != -best[identifier][3]]
-        self._gone = np.array([row for row, _ in pairs], dtype=np.int64)
-        self._stays = np.array([row for _, row in pairs], dtype=np.int64)
+                group = groups.setdefault(identifier, len(groups))
+                if group == len(best):
+                    best.append(rank)
+                elif rank > best[group]:
+                    best[group] = rank
+                seen_rows.append(-rank[-1])
+                seen_groups.append(group)
+        rows, of_group = np.array(seen_rows, dtype=np.int64), np.array(seen_groups, dtype=np.int64)
+        stays = np.array([-rank[-1] for rank in best], dtype=np.int64)[of_group]
+        self._gone, self._stays = rows[rows != stays], stays[rows != stays]
 
     def __len__(self) -> int:
         return len(self._gone)
@@ -97,7 +103,7 @@ def _candidates(piece: Mapping[str, Array], repeated: set[int]) -> NDArray[np.in
 
 
 def _ranks(read: Mapping[str, Array]) -> list[Rank]:
-    """What decides, the greatest stays: time of update, inputs filled, content hash reversed, row reversed."""
+    """What decides, the greatest stays: time of update, inputs filled, content hash and row, smallest first."""
     clean = rules.empty_broken_cells(read).columns
     updated = [rules.timestamp(text) if text else None for text in clean["updated"]]
     numbers = [~np.isnan(clean[f"catalogue.{name}"]) for name in schema.measured_inputs()]
@@ -105,14 +111,9 @@ def _ranks(read: Mapping[str, Array]) -> list[Rank]:
     filled = np.sum([*numbers, *texts], axis=0)
     hashes = fingerprint.of_rows({**clean, **_given(read)}, "")
     return [
-        (-np.inf if moment is None else moment, int(count), _reversed(digest), -int(row))
+        (-math.inf if moment is None else moment, int(count), -int(digest, 16), -int(row))
         for moment, count, digest, row in zip(updated, filled, hashes, read["row"], strict=True)
     ]
-
-
-def _reversed(digest: str) -> str:
-    """A text of hexadecimal digits that sorts the other way round."""
-    return digest.translate(str.maketrans("0123456789abcdef", "fedcba9876543210"))
 
 
 def _given(read: Mapping[str, Array]) -> dict[str, Array]:

@@ -61,7 +61,7 @@ def _readable(file: Path) -> Iterator[Any]:
     import pyarrow.parquet as pq
 
     try:
-        with pq.ParquetFile(file, thrift_string_size_limit=64 << 20, thrift_container_size_limit=1_000_000) as parquet:
+        with pq.ParquetFile(file) as parquet:
             yield parquet
     except (pa.ArrowException, OSError, MemoryError, OverflowError, ValueError) as error:
         raise CatalogueError(f"{file.name}: cannot be read as Parquet ({shown(str(error), 160)})") from None

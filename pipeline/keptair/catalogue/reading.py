@@ -96,6 +96,10 @@ def _opened(path: Path, source: str, wanted: ColumnMap) -> Catalogue:
     try:
         if not path.exists():
             raise CatalogueError(f"{path}: there is no such file")
+        if not path.is_file() and not path.is_dir():
+            raise CatalogueError(
+                f"{path}: is neither a file nor a folder; it is read more than once, so make it a file"
+            )
         state = _state_of(path)
         digest = _sha256(path)
         table = open_table(path, wanted.file.comment)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections import Counter
 from collections.abc import Mapping
 from dataclasses import dataclass, field
@@ -100,7 +101,7 @@ class _Resolver:
     def __init__(self, table: RawTable, column_map: ColumnMap) -> None:
         self.table = table
         self.map = column_map
-        self.problems: list[str] = []
+        self.problems = column_map.mistakes()
         self.remarks: list[str] = []
         self.repeated = {name: count for name, count in Counter(table.names).items() if count > 1}
         self.serves: dict[int, set[str]] = {}  # position → canonical columns it is mapped to
@@ -125,7 +126,8 @@ class _Resolver:
     def _number(self, name: str, missing: frozenset[str]) -> NumberPlan:
         if name in self.map.constants:
             self._note_overruled(name)
-            return NumberPlan(name, constant=float(self.map.constants[name]))
+            constant = self.map.constants[name]
+            return NumberPlan(name, constant=constant if isinstance(constant, float | int) else math.nan)
         entry = self._entry(name)
         values = tuple(
             Source(position, self._conversion(name, position, entry))
