@@ -10,12 +10,18 @@ if TYPE_CHECKING:
     from keptair.runs.loading import load
     from keptair.runs.running import run
     from keptair.settings import Settings
+    from keptair.worksheet import trace
 
 __version__ = "0.1.0"
-__all__ = ["Settings", "__version__", "errors", "load", "run"]
+__all__ = ["Settings", "__version__", "errors", "load", "run", "trace"]
 
 # Found on first use: importing keptair costs nothing, as the command line's help must not.
-_HOMES = {"Settings": "keptair.settings", "load": "keptair.runs.loading", "run": "keptair.runs.running"}
+_HOMES = {
+    "Settings": "keptair.settings",
+    "load": "keptair.runs.loading",
+    "run": "keptair.runs.running",
+    "trace": "keptair.worksheet",
+}
 
 
 def __getattr__(name: str) -> Any:

@@ -135,7 +135,7 @@ def _map(options: argparse.Namespace) -> int:
 
 
 def _trace(options: argparse.Namespace) -> int:
-    from keptair.trace import rendering, worked_sheet
+    from keptair.worksheet import rendering, worked_sheet
 
     shown = {"text": rendering.as_text, "markdown": rendering.as_markdown, "json": rendering.as_json}
     sheet = worked_sheet(options.planet, options.run)

@@ -119,7 +119,7 @@ class Follower:
             f"outflow.{self.key}": loss.outflow,
             f"key_flux.{self.key}": loss.key_flux,
             f"limited.{self.key}": np.where(
-                loss.outflow | (loss.energy < loss.key_flux * self.key_mass), ENERGY, KINETIC
+                loss.outflow | (loss.energy <= loss.key_flux * self.key_mass), ENERGY, KINETIC
             ).astype(np.int8),
             f"particles.{self.key}": self.column / self.air_mass,
         }

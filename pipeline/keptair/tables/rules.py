@@ -80,34 +80,24 @@ def broken_rows(read: Mapping[str, Array]) -> list[BrokenRow]:
     longest = schema.catalogue()["planet_id"].max_length
     sound = wrong == 0
     lengths = np.fromiter(map(len, names), dtype=np.int64, count=len(names))
-    empty, long = np.flatnonzero(sound & (lengths == 0)), np.flatnonzero(sound & (lengths > longest))
-    ragged, twins = np.flatnonzero(~sound), np.flatnonzero(sound & (twin > 0))
+
+    def misnamed(row: int) -> str:
+        return (
+            f"planet_id has {lengths[row]} characters; {longest} are allowed."
+            if names[row]
+            else "There is no planet_id."
+        )
+
+    def doubled(row: int) -> str:
+        return f"Row {twin[row]} has the same planet_id; it is newer or fuller, or comes first, and stays."
+
+    def ragged(row: int) -> str:
+        return f"The row has {wrong[row]} cells, not as many as the header."
+
     return [
-        BrokenRow("identifier", "planet_id", empty, [""] * len(empty), ["The row has no planet_id."] * len(empty)),
-        BrokenRow(
-            "identifier",
-            "planet_id",
-            long,
-            [names[row] for row in long],
-            [f"planet_id has {lengths[row]} characters; {longest} are allowed." for row in long],
-        ),
-        BrokenRow(
-            "duplicate",
-            "planet_id",
-            twins,
-            [names[row] for row in twins],
-            [
-                f"Row {twin[row]} has the same planet_id; it is newer or fuller, or comes first, and stays."
-                for row in twins
-            ],
-        ),
-        BrokenRow(
-            "cells",
-            "",
-            ragged,
-            [str(wrong[row]) for row in ragged],
-            [f"The row has {wrong[row]} cells, not as many as the header." for row in ragged],
-        ),
+        _broken("identifier", "planet_id", sound & ((lengths == 0) | (lengths > longest)), names, misnamed),
+        _broken("duplicate", "planet_id", sound & (twin > 0), names, doubled),
+        _broken("cells", "", ~sound, wrong, ragged),
     ]
 
 
@@ -160,6 +150,11 @@ def timestamp(text: str) -> float | None:
     if moment.tzinfo is None:
         moment = moment.replace(tzinfo=UTC)
     return (moment - datetime(1970, 1, 1, tzinfo=UTC)).total_seconds()
+
+
+def _broken(rule: str, column: str, mask: Mask, stood: Array, reason: Callable[[int], str]) -> BrokenRow:
+    rows = np.flatnonzero(mask)
+    return BrokenRow(rule, column, rows, [str(stood[row]) for row in rows], [reason(row) for row in rows.tolist()])
 
 
 def _clean_number(

@@ -79,6 +79,18 @@ def read_name(name: str) -> Reading:
     return replace(_understood(tokens), unit=unit, glued=glued)
 
 
+def without_units(name: str) -> str:
+    """The words of a name without those for units, joined."""
+    if len(name) > LONGEST_NAME:
+        return name.lower()
+    brackets = BRACKETS.search(name)
+    pieces = _phrases(PIECES.findall(name[: brackets.start()] if brackets else name))
+    tokens = [token for piece in pieces for token in _taken_apart(piece)[0]]
+    if len(tokens) > 1 and tokens[-1] in ("e", "j") and tokens[-2] in words().quantities:
+        tokens.pop()
+    return "".join(token for token in tokens if len(token) == 1 or token not in words().units)
+
+
 def read_description(text: str) -> Reading:
     """A description: what it speaks of first counts; words it does not know do not."""
     brackets = BRACKETS.search(text.strip().rstrip("."))

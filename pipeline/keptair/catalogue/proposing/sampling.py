@@ -23,7 +23,7 @@ from keptair.errors import CatalogueError
 ROWS = 100_000  # looked at
 CELLS = 10_000_000  # of wide tables fewer rows
 FEWEST_ROWS = 1_000
-UNWRITABLE = re.compile("[\ud800-\udfff]")  # halves of letters, which TOML cannot hold
+UNWRITABLE = re.compile(r"[\ud800-\udfff]")  # halves of letters, which TOML cannot hold
 NO_WORDS = cells.missing_words()
 
 

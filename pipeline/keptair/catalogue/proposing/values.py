@@ -11,7 +11,7 @@ from keptair.catalogue.proposing.naming import Reading
 from keptair.catalogue.proposing.sampling import Column
 from keptair.catalogue.proposing.vocabulary import Input, Typical, words
 from keptair.catalogue.showing import quoted
-from keptair.catalogue.units import Conversion, UnitError, conversion, dimension_of, schema_unit
+from keptair.catalogue.units import LOGARITHM, NO_UNIT, Conversion, UnitError, conversion, dimension_of, schema_unit
 from keptair.tables import schema
 
 MARKS = (-1, 0, -9, -99, -999, -9999, -99999, 99, 999, 9999, 99999, -99.9, -999.9, -99.99, 99.9, 99.99, 99.999, 999.9)
@@ -45,6 +45,15 @@ def span(values: Floats) -> tuple[float, float] | None:
     return float(low), float(high)
 
 
+def rough(values: Floats) -> Floats:
+    """The values without the usual marks of missing that lie beyond all others."""
+    present = [mark for mark in MARKS if (values == mark).any()]
+    others = values[np.isfinite(values) & ~np.isin(values, present)]
+    if not len(others):
+        return values
+    return without(values, [mark for mark in present if not others.min() < mark < others.max()])
+
+
 def missing_marks(values: Floats, unit: Conversion, name: str) -> list[int | float]:
     """Numbers that stand for missing: the usual ones, where the quantity cannot be that."""
     present = [mark for mark in MARKS if (values == mark).any()]
@@ -65,11 +74,14 @@ def guess_unit(input: Input, column: Column, readings: tuple[Reading, Reading], 
     readings : of the name and of the description.
     values : without marks of missing, in the file's unit.
     """
+    if column.name == input.name and not column.unit:
+        unit = schema_unit(input.name)
+        return UnitGuess(unit, conversion(unit, input.name))
     logarithm = any(reading.logarithm for reading in readings)
     found = span(values)
     doubts: tuple[str, ...] = ()
     for source, text in _stated(input, column, readings):
-        unit = f"dex({text})" if logarithm and not _is_logarithm(text) else text
+        unit = f"dex({text})" if logarithm and not LOGARITHM.match(text) else text
         try:
             factor = conversion(unit, input.name)
         except UnitError as error:
@@ -104,7 +116,7 @@ def _from_values(input: Input, found: tuple[float, float] | None, logarithm: boo
     [unit] = common
     written = f"values of {_range(found)} fit"
     because = f"{written} {unit.unit}" if unit.unit else written
-    if unit is not input.units[0] or (input.must_say and len(input.units) > 2):
+    if unit is not input.units[0] or input.any_unit:
         doubts = (*doubts, f"only the values say {unit.unit or 'so'}")
     return UnitGuess(unit.unit, conversion(unit.unit, input.name), because, doubts)
 
@@ -118,9 +130,11 @@ def _stated(input: Input, column: Column, readings: tuple[Reading, Reading]) -> 
         for word in reading.unit_words:
             spelled = words().units[word].spellings
             stated.append((source, spelled.get(dimension, "")))
-    if column.name == input.name:
-        stated.append(("the name", schema_unit(input.name)))
-    return [(source, text) for source, text in stated if text and text.strip("-. 01/") and text.lower() != "dex"]
+    return [
+        (source, text)
+        for source, text in stated
+        if text.strip().lower() not in (*NO_UNIT, "dex") and text.strip("-. 0123456789/")
+    ]
 
 
 def _is_known(unit: str) -> bool:
@@ -134,26 +148,14 @@ def _is_known(unit: str) -> bool:
     return False
 
 
-def _is_logarithm(unit: str) -> bool:
-    try:
-        return any(conversion(unit, name).logarithmic for name in schema.measured_inputs() if _converts(unit, name))
-    except UnitError:
-        return False
-
-
-def _converts(unit: str, name: str) -> bool:
-    try:
-        conversion(unit, name)
-    except UnitError:
-        return False
-    return True
-
-
 def _is_likely(input: Input, unit: Conversion, found: tuple[float, float]) -> bool:
     """Whether the values, in the canonical unit, lie about where they usually do."""
     low, high = sorted(float(value) for value in unit.values(np.array(found)))
     usual = input.units[0]
-    return usual.low[0] / SLACK <= low <= usual.low[1] * SLACK and usual.high[0] / SLACK <= high <= usual.high[1] * SLACK
+    return all(
+        least * (SLACK if least < 0 else 1 / SLACK) <= value <= most * (SLACK if most > 0 else 1 / SLACK)
+        for value, (least, most) in ((low, usual.low), (high, usual.high))
+    )
 
 
 def _fits(unit: Typical, found: tuple[float, float]) -> bool:

@@ -78,6 +78,7 @@ class Input:
     subject: str
     units: tuple[Typical, ...]
     must_say: bool = False
+    any_unit: bool = False
 
 
 @cache
@@ -128,6 +129,7 @@ def inputs() -> tuple[Input, ...]:
                 for unit in entry["units"]
             ),
             entry.get("must_say", False),
+            entry.get("any_unit", False),
         )
         for name, entry in _toml("inputs").items()
     )

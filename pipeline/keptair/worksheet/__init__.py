@@ -13,9 +13,9 @@ from keptair.records import from_records
 from keptair.settings import Settings
 from keptair.stages import through
 from keptair.tables import schema
-from keptair.trace.rendering import as_text
-from keptair.trace.sections import sections
-from keptair.trace.sheet import Sheet
+from keptair.worksheet.rendering import as_text
+from keptair.worksheet.sections import sections
+from keptair.worksheet.sheet import Sheet
 
 
 def trace(planet: str, where: str | Path) -> str:

@@ -29,7 +29,7 @@ from keptair.stages.fill import DRAWN, UNITS
 from keptair.stages.upper_air import upper_air
 from keptair.tables import schema
 from keptair.tables.formulas import of_function
-from keptair.trace.sheet import Section, Step, number, plain, word
+from keptair.worksheet.sheet import Section, Step, number, plain, word
 
 
 def sections(batch: Batch, settings: Settings) -> list[Section]:

@@ -7,7 +7,7 @@ import pytest
 
 import keptair
 from keptair.errors import NotThereError
-from keptair.trace import rendering, trace, worked_sheet
+from keptair.worksheet import rendering, trace, worked_sheet
 
 SURVEY = "sample_data/survey.csv"
 

@@ -6,7 +6,7 @@ import json
 import textwrap
 from dataclasses import asdict
 
-from keptair.trace.sheet import Section, Sheet, Step
+from keptair.worksheet.sheet import Section, Sheet, Step
 
 WIDTH = 80
 INDENT = "        "
