@@ -199,6 +199,20 @@ def test_what_the_answer_leaves_out_is_said(survey: Path, said: str) -> None:
     assert said in read(survey)
 
 
+def test_known_worlds_go_through_the_settings_of_the_run(survey: Path) -> None:
+    assert "15 of 15 come out as expected" in read(survey)
+    broken = read(survey, Settings.read(None, {"xuv.saturation_log10": -2.2}))
+    assert "not as expected" in broken
+    assert "15 of 15" not in broken
+
+
+def test_every_derived_column_has_its_formula_on_the_page(survey: Path) -> None:
+    page = read(survey)
+    derived = {column.name for column in schema.table("planets") if column.derived_by and not column.subject}
+    assert all(f"planets.{name}" in page for name in derived)
+    assert "1.07 (M/M⊕)^(1/3.7)" in page  # Zeng et al. 2016
+
+
 def test_the_guide_explains_every_verdict_reason_and_flag(survey: Path) -> None:
     words = read(survey)
     for flag in schema.flags():

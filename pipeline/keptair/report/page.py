@@ -10,7 +10,8 @@ from typing import TYPE_CHECKING, Any
 
 from keptair.report import counts, figures, targets, words
 from keptair.settings import Settings
-from keptair.tables import schema
+from keptair.tables import dictionary, schema
+from keptair.verification import verify
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -90,6 +91,8 @@ def _context(part: Path, settings: Settings) -> dict[str, Any]:
         "flags": counts.flags(planets),
         "backgrounds": counts.backgrounds(planets, settings),
         "exobases": counts.exobases(planets, settings),
+        "known_worlds": verify(settings),
+        "formulas": dictionary.formulas(),
         "changed_settings": counts.changed_settings(settings),
     }
 

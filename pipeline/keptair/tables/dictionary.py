@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterator
+from dataclasses import dataclass
 from pathlib import Path
 
 from keptair.tables import schema
-from keptair.tables.formulas import formula
+from keptair.tables.formulas import Formula, formula
 
 HEAD = """# Data dictionary
 
@@ -77,7 +78,7 @@ def page() -> str:
     parts.append("| bit | name | raised by | meaning |\n|---|---|---|---|")
     parts[-1] += "".join(f"\n| {one.bit} | `{one.name}` | {one.stage} | {one.description} |" for one in schema.flags())
     parts.append("\n## Formulas\n\nFormula, source and validity behind every derived column.\n")
-    parts += list(_formulas())
+    parts += [_written(behind) for behind in formulas()]
     return "\n".join(parts).rstrip() + "\n"
 
 
@@ -100,30 +101,46 @@ def _row(column: schema.Column) -> str:
     return f"| `{name}` | {column.type} | {unit} | {column.ucd} | {description.replace('|', '/')} |"
 
 
-def _formulas() -> Iterator[str]:
-    by_function: dict[str, list[str]] = {}
-    sources: dict[str, list[str]] = {}
+@dataclass(frozen=True)
+class Behind:
+    """A formula, the columns it stands behind, and the sources their schema entries name."""
+
+    told: Formula
+    columns: tuple[str, ...]
+    sources: tuple[str, ...]
+
+
+def formulas() -> list[Behind]:
+    """Formula, source and validity of every derived column, in the order of the tables."""
+    found: dict[str, Behind] = {}
     names: tuple[schema.TableName, ...] = ("planets", "gases")
     for name in names:
         for column in _distinct(schema.table(name)):
-            if column.derived_by:
-                shown = column.template if "{gas}" in column.template else column.name
-                by_function.setdefault(column.derived_by, []).append(f"`{name}.{shown}`")
-                if column.source and column.source not in sources.setdefault(column.derived_by, []):
-                    sources[column.derived_by].append(column.source)
-    for dotted, columns in by_function.items():
-        told = formula(dotted)
-        lines = [f"### {dotted.removeprefix('keptair.')}\n", f"Behind {', '.join(columns)}.\n", told.summary]
-        if told.equation:
-            lines.append(f"\n> {told.equation}")
-        if told.parameters:
-            units = ", ".join(f"{name} [{unit}]" for name, unit in told.parameters.items())
-            lines.append(f"\nFrom {units}; gives [{told.returns}].")
-        if told.notes:
-            lines.append(f"\n{told.notes}")
-        if dotted in sources:
-            lines.append(f"\nSource: {'; '.join(sources[dotted])}.")
-        yield "\n".join(lines) + "\n"
+            if not column.derived_by:
+                continue
+            known = found.get(column.derived_by, Behind(formula(column.derived_by), (), ()))
+            shown = column.template if "{gas}" in column.template else column.name
+            sources = (column.source,) if column.source and column.source not in known.sources else ()
+            found[column.derived_by] = Behind(
+                known.told, (*known.columns, f"{name}.{shown}"), (*known.sources, *sources)
+            )
+    return list(found.values())
+
+
+def _written(behind: Behind) -> str:
+    told = behind.told
+    lines = [f"### {told.name.removeprefix('keptair.')}\n"]
+    lines += [f"Behind {', '.join(f'`{column}`' for column in behind.columns)}.\n", told.summary]
+    if told.equation:
+        lines.append(f"\n> {told.equation}")
+    if told.parameters:
+        units = ", ".join(f"{name} [{unit}]" for name, unit in told.parameters.items())
+        lines.append(f"\nFrom {units}; gives [{told.returns}].")
+    if told.notes:
+        lines.append(f"\n{told.notes}")
+    if behind.sources:
+        lines.append(f"\nSource: {'; '.join(behind.sources)}.")
+    return "\n".join(lines) + "\n"
 
 
 def main() -> int:

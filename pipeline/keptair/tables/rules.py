@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+import sys
 from collections.abc import Callable, Collection, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
@@ -106,7 +107,7 @@ def complaint(column: schema.Column, value: object) -> str:
     if column.type == "number":
         if isinstance(value, bool) or not isinstance(value, int | float):
             return "a number is needed"
-        if not math.isfinite(value):
+        if not abs(value) <= sys.float_info.max:  # a whole number may be too large even to be infinite
             return CELL_RULES["infinite"]
         return "" if in_bounds(column, np.array([float(value)]))[0] else f"{CELL_RULES['bounds']}, {bounds(column)}"
     if not isinstance(value, str):
