@@ -210,7 +210,7 @@ def test_every_derived_column_has_its_formula_on_the_page(survey: Path) -> None:
     page = read(survey)
     derived = {column.name for column in schema.table("planets") if column.derived_by and not column.subject}
     assert all(f"planets.{name}" in page for name in derived)
-    assert "1.07 (M/M⊕)^(1/3.7)" in page  # Zeng et al. 2016
+    assert "q = v_esc / v_rms = √(λ / 1.5)" in page
 
 
 def test_the_guide_explains_every_verdict_reason_and_flag(survey: Path) -> None:

@@ -197,7 +197,16 @@ class Follower:
         )
 
     def trace(self, name: str, gas: Gas, loss: Loss, wind: Array) -> tuple[Array, Array]:
-        """Jeans flux and flux of a trace, both per unit mixing ratio at the homopause."""
+        """Jeans flux and flux of a trace, both per unit mixing ratio at the homopause: the tightest throttle rules.
+
+        φ_J and φ_D in series while the background evaporates; carried along by the energy-limited wind in an outflow
+
+        Notes
+        -----
+        A background is lost at the energy limit while it flows out, else at the smaller of that and the Jeans flux of
+        its key escaper. Traces have no energy limit of their own; those not lighter than the air below have no supply
+        limit. Ties go to energy, then supply.
+        """
         kinetic = kinetics.trace_jeans_flux(
             loss.carrier, loss.unit_jeans, self.ground.upper_heights, gas.mass_u, self.background.upper_mass_u
         )

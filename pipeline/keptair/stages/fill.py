@@ -206,7 +206,12 @@ def relate(
 def envelope_evidence(mass: Array, radius: Array, weighed: Array, filled_radius: Array, settings: Settings) -> Array:
     """Draws lighter than rock of any core; without a measured mass, larger than rock gets.
 
-    Small icy bodies are light without having air: no draw within one Earth radius and mass counts.
+    R > R_sil(M) with a measured mass or a filled radius, R_sil of `physics.bulk.silicate_radius`; else R > 1.8 R⊕
+
+    Notes
+    -----
+    Small icy bodies are light without having air: no draw within one Earth radius and mass counts. A limit is no
+    measured mass; M sin i is one where the planet transits.
     """
     lighter_than_rock = radius > bulk.silicate_radius(mass)
     large = radius > settings.verdict.radius_only_rearth * EARTH_RADIUS

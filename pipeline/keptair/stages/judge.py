@@ -27,12 +27,15 @@ def run(batch: Batch, settings: Settings) -> Batch:
     envelope_probability = np.nan_to_num(batch.columns["envelope_probability"])
     verdict = verdicts(envelope_probability, secondary_probability, frozen, assessed, settings)
     is_envelope = verdict == "envelope"
-    either = 1 - (1 - envelope_probability) * (1 - secondary_probability)
     numbers = {
         "secondary_probability": secondary_probability,
         "secondary_probability_radiative": draws.share(radiative),
         "hydrogen_kept": np.where(is_envelope, draws.share(with_hydrogen), np.nan),
-        "air_probability": np.where(is_envelope, either, draws.share(kept | with_hydrogen)),
+        "air_probability": np.where(
+            is_envelope,
+            chance_of_either(envelope_probability, secondary_probability),
+            draws.share(kept | with_hydrogen),
+        ),
     }
     columns: dict[str, Array] = {name: np.where(assessed, values, np.nan) for name, values in numbers.items()}
     columns |= {
@@ -47,15 +50,44 @@ def run(batch: Batch, settings: Settings) -> Batch:
     return batch.adding(columns, {"secondary_kept": kept})
 
 
+def chance_of_either(envelope: Array, secondary: Array) -> Array:
+    """Chance of air on an envelope: of hydrogen, steam or water, or else of secondary air.
+
+    1 − (1 − P_envelope)(1 − P_secondary) for envelopes; else the share of draws with the secondary air kept, or with an
+    envelope whose hydrogen is kept
+
+    Notes
+    -----
+    So a hot rock with a loose mass is not ranked as if its error bar were air.
+    """
+    chance: Array = 1 - (1 - envelope) * (1 - secondary)
+    return chance
+
+
 def kept_draws(batch: Batch, name: str) -> Array:
-    """Draws in which less than one inventory of the secondary background is gone."""
+    """Draws in which less than one inventory of the secondary background is gone.
+
+    Λ = ∫ dt/τ < 1, from t₀ to the age of the system
+
+    Notes
+    -----
+    The chance that thermal loss alone removed less than one inventory, not a posterior given that air is seen. The
+    trapezoid rule in ln t over `epochs` epochs.
+    """
     lost = np.broadcast_to(pick(batch, name, batch.columns["secondary_background"]), batch.draws["gravity"].shape)
     kept: Array = lost < 1
     return kept
 
 
 def verdicts(envelope: Array, secondary: Array, frozen: Array, assessed: Array, settings: Settings) -> Array:
-    """Envelope by density first, then the secondary air's probability against the thresholds."""
+    """Envelope by density first, then the secondary air's probability against the thresholds.
+
+    envelope: P_envelope ≥ 0.9; else secondary: P ≥ 0.8, bare: P ≤ 0.2 or frozen out, undecided between
+
+    Notes
+    -----
+    The thresholds are settings. A row without radius and mass, flux or stellar mass is unassessed, which beats all.
+    """
     limits = settings.verdict
     verdict = np.full(len(envelope), "undecided", dtype=object)
     verdict[secondary >= limits.keep] = "secondary"
@@ -66,7 +98,14 @@ def verdicts(envelope: Array, secondary: Array, frozen: Array, assessed: Array, 
 
 
 def reasons(batch: Batch, verdict: Array, gone: Array, frozen: Array) -> Array:
-    """What each verdict rests on."""
+    """What each verdict rests on.
+
+    lost_by_outflow: in more than half of the draws that lost it, more than half of Λ fell in outflow
+
+    Notes
+    -----
+    envelope: density; radius_only without a measured mass; mass_only with a filled radius. bare: frozen first.
+    """
     secondary = batch.columns["secondary_background"]
     shape = batch.draws["gravity"].shape
     lost = np.broadcast_to(pick(batch, "lost", secondary), shape)

@@ -72,7 +72,15 @@ def exobase_statistics(batch: Batch, key: str, settings: Settings) -> dict[str, 
 
 
 def gas_statistics(batch: Batch, key: str, gas: str, background: Background, settings: Settings) -> dict[str, Array]:
-    """Flux, loss, time and retention of one gas under one background; of the background itself for its main gas."""
+    """Flux, loss, time and retention of one gas under one background; of the background itself for its main gas.
+
+    retention: share of draws with Λ = ∫ dt/τ < 1 from t₀ to the age; held now: share with τ above the age
+
+    Notes
+    -----
+    A trace is taken in the limit of no mixing ratio; its fluxes are published for `trace_mixing_ratio`. Its retention
+    says whether it lasts under that background, not whether the background lasts.
+    """
     made, end = batch.draws, f"{key}.{gas}"
     area = 4 * np.pi * np.square(made["input.planet_radius_rearth"])
     has_exobase = ~np.isnan(made[f"exobase_radius.{key}"])
