@@ -5,7 +5,7 @@ from __future__ import annotations
 import tomllib
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, cached_property
 from importlib import resources
 from importlib.resources.abc import Traversable
 from itertools import groupby
@@ -63,11 +63,12 @@ class Table:
     def names(self) -> tuple[str, ...]:
         return tuple(column.name for column in self.columns)
 
+    @cached_property
+    def by_name(self) -> Mapping[str, Column]:
+        return {column.name: column for column in self.columns}
+
     def __getitem__(self, name: str) -> Column:
-        for column in self.columns:
-            if column.name == name:
-                return column
-        raise KeyError(name)
+        return self.by_name[name]
 
     def __iter__(self) -> Iterator[Column]:
         return iter(self.columns)
