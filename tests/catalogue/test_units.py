@@ -94,6 +94,8 @@ def test_errors_may_have_a_unit_of_their_own() -> None:
         ("km/s", "orbital_period_d", "of dimension speed/velocity, but a time is needed"),
         ("dex(Msun)", "stellar_age_gyr", "a mass, but a time is needed"),
         ("furlong-ish", "distance_pc", "no such unit is known"),
+        ("1e-40099999", "distance_pc", "no such unit can be reckoned with"),
+        ("10 Jy99999", "distance_pc", "no such unit can be reckoned with"),
         ("dex", "stellar_age_gyr", "a logarithm, but of what"),
         ("] [", "stellar_age_gyr", "no such unit is known"),
     ],

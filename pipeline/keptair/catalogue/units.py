@@ -147,14 +147,16 @@ def _conversion(written: str, column: str) -> Conversion:
     from astropy import units
 
     wanted = dimension_of(column)
-    unit = _parsed(written, wanted)
     target = _earth_flux() if wanted == "flux" else units.Unit(schema_unit(column))
-    if unit == units.deg_C and wanted == "temperature":
-        return Conversion(1.0, 273.15)
     try:
-        return Conversion(float(f"{unit.to(target):.15g}"))  # 15, not 14.999999999999998
-    except units.UnitConversionError:
-        raise UnitError(f"{_dimension_name(unit)}, but {NAMES[wanted]} is needed") from None
+        unit = _parsed(written, wanted)
+        if unit == units.deg_C and wanted == "temperature":
+            return Conversion(1.0, 273.15)
+        if unit.is_equivalent(target):
+            return Conversion(float(f"{unit.to(target):.15g}"))  # 15, not 14.999999999999998
+        raise UnitError(f"{_dimension_name(unit)}, but {NAMES[wanted]} is needed")
+    except (ArithmeticError, units.UnitScaleError):
+        raise UnitError("no such unit can be reckoned with: its scale is no number") from None
 
 
 def _parsed(written: str, wanted: str) -> Any:

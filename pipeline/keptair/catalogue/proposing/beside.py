@@ -69,6 +69,8 @@ def _errors(found: Beside, errors: dict[str, Column]) -> None:
     if plus and minus:
         if _share(plus.numbers < 0, plus.numbers) > MOST and _share(minus.numbers > 0, minus.numbers) > MOST:
             plus, minus = minus, plus
+    elif plus and both:  # E_Rp and e_Rp
+        minus = both
     elif both:
         plus, minus = both, None
     for key, column in (("plus", plus), ("minus", minus)):
@@ -132,8 +134,7 @@ def _has_its_unit(found: Beside, candidate: Candidate, column: Column) -> bool:
 def precision(candidate: Candidate, errors: Iterable[Column]) -> float:
     """The median size of the errors relative to the values, infinite where there are none."""
     for column in errors:
-        with np.errstate(divide="ignore", invalid="ignore"):
-            relative = np.abs(column.numbers / candidate.column.numbers)
+        relative = np.abs(column.numbers / candidate.column.numbers)
         relative = relative[np.isfinite(relative) & (relative > 0)]
         if len(relative):
             return float(np.median(relative))

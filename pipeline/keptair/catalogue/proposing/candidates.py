@@ -11,17 +11,21 @@ from keptair.catalogue.cells import Floats
 from keptair.catalogue.proposing.naming import Reading, read_ucd
 from keptair.catalogue.proposing.sampling import Column
 from keptair.catalogue.proposing.values import UnitGuess, guess_unit, missing_marks, rough, without
-from keptair.catalogue.proposing.vocabulary import Input, inputs
+from keptair.catalogue.proposing.vocabulary import Input, inputs, words
 from keptair.catalogue.showing import quoted
-from keptair.catalogue.units import UnitError, conversion
+from keptair.catalogue.units import NO_UNIT, UnitError, conversion
 from keptair.tables import schema
 
 COOLEST_STARS = 2300.0  # K: a column of temperatures that lie mostly above is one of stars
 SPARSE = 0.02  # a column filled in fewer rows is hardly the one that is meant
 OF_THE_ORBIT = ("period", "axis", "eccentricity", "albedo")
+OF_BOTH = ("age", "distance")
 OF_THE_LIGHT = ("luminosity", "xray")
-BODIES = {"radius": "planet_radius_rearth", "mass": "planet_mass_mearth"}
-OF_STARS = {"radius": (50.0, 250.0), "mass": (1e5, 1e6)}  # of the unit in Earths: the Sun's is 109 and 333 000
+BODIES = {  # dimension; a number in Earths; how many Earths are a star: Jupiter has 11 and 318, the Sun 109 and 333 000
+    "radius": ("length", "planet_radius_rearth", 50.0),
+    "mass": ("mass", "planet_mass_mearth", 1e4),
+}
+EARTHS = 0.5  # a unit of fewer Earths is named after no body
 
 
 @dataclass
@@ -91,8 +95,6 @@ def meaning(column: Column, name: Reading, description: Reading) -> Meaning | No
 
 def candidates(column: Column, found: Meaning, said: Collection[str]) -> list[Candidate]:
     """The canonical numbers a column may be. said : whose the same quantity of other columns is."""
-    if not column.is_numeric and column.words and column.name not in schema.measured_inputs():
-        return []
     made = []
     for input in inputs():
         if input.quantity == _base(found.quantity) or column.name == input.name:
@@ -108,6 +110,8 @@ def _candidate(input: Input, column: Column, found: Meaning, doubts: list[str]) 
     candidate = Candidate(input, column, because, [*found.doubts, *doubts, *unit.doubts], unit)
     candidate.minimum = found.quantity == "minimum_mass"
     candidate.in_unit(unit)
+    if not column.is_numeric and column.words and column.name != input.name:
+        candidate.unit = UnitGuess(wrong=f"it holds text such as {quoted(next(iter(column.words)))}")
     if 0 < candidate.count < SPARSE * len(column.numbers):
         candidate.doubts.append(f"only {candidate.count} of {len(column.numbers)} rows have it")
     return candidate
@@ -145,7 +149,7 @@ def _doubts_of_subject(input: Input, column: Column, found: Meaning, said: Colle
         return None
     if found.quantity in OF_THE_LIGHT and subject == "planet":
         return None
-    return ["it is said to be the planet's"] if found.quantity == "age" and subject == "planet" else []
+    return ["it is said to be the planet's"] if found.quantity in OF_BOTH and subject == "planet" else []
 
 
 def _whose(input: Input, column: Column, said: Collection[str]) -> list[str] | None:
@@ -162,27 +166,20 @@ def _whose(input: Input, column: Column, said: Collection[str]) -> list[str] | N
 
 def _body(column: Column, name: Reading, description: Reading, quantity: str) -> str:
     """Whose radius or mass it is, by the body its unit is named after."""
-    canonical = BODIES.get(_base(quantity))
-    if not canonical:
+    base = _base(quantity)
+    if base not in BODIES:
         return ""
-    words = [word for reading in (name, description) for word in reading.unit_words]
-    for text in (column.unit, name.unit, description.unit, *words):
-        spelled = {"e": "earth", "j": "jup"}.get(text, text)
-        if spelled in ("earth", "jup", "jupiter", "jovian", "earths", "jupiters"):
-            return "planet"
-        if spelled in ("sun", "solar", "sol", "suns"):
-            return "star"
-        if len(text) < 2:
+    dimension, canonical, largest = BODIES[base]
+    spelled = [words().units[word].spellings.get(dimension, "") for word in (*name.unit_words, *description.unit_words)]
+    for unit in (column.unit, name.unit, description.unit, *spelled):
+        if unit.strip().lower() in NO_UNIT:
             continue
         try:
-            factor = conversion(text, canonical).factor
+            factor = conversion(unit, canonical).factor
         except UnitError:
             continue
-        low, high = OF_STARS[_base(quantity)]
-        if low < factor < high:
-            return "star"
-        if 0.5 < factor < 500:
-            return "planet"
+        if factor > EARTHS:
+            return "planet" if factor < largest else "star"
     return ""
 
 

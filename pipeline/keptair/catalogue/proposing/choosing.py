@@ -1,4 +1,4 @@
-"""The canonical numbers: of all columns that may be one, the one that most likely is, with all that stands beside it."""
+"""Of all columns that may be a canonical number the one that most likely is, with all that stands beside it."""
 
 from __future__ import annotations
 
@@ -15,7 +15,7 @@ from keptair.catalogue.proposing.candidates import Candidate
 from keptair.catalogue.proposing.companions import Companion
 from keptair.catalogue.proposing.kinds import bare_relation, kinds_of
 from keptair.catalogue.proposing.laws import confirmed_by_kepler, is_same, settled_by_density
-from keptair.catalogue.proposing.model import Guess, Question, confidence
+from keptair.catalogue.proposing.model import Confidence, Guess, Question, confidence
 from keptair.catalogue.proposing.sampling import Column
 from keptair.catalogue.showing import quoted
 from keptair.tables import schema
@@ -31,7 +31,7 @@ class Chosen:
 
     candidate: Candidate
     beside: Beside
-    rivals: list[tuple[Candidate, bool]] = field(default_factory=list)  # and whether it holds the same measurements
+    rivals: list[tuple[Candidate, str]] = field(default_factory=list)  # and why they were not taken
     contested: bool = False  # by others as good
 
 
@@ -54,7 +54,7 @@ def choose(
     _settle_by_laws(chosen)
     for name, taken in list(chosen.items()):
         if taken.contested:
-            taken.candidate.doubts.append("others measure the same")
+            taken.candidate.doubts.append("other columns say the same")
         if taken.candidate.unit.possible:
             questions.append(Question(name, _open_unit(taken.candidate)))
             del chosen[name]
@@ -75,7 +75,9 @@ def guesses(
         candidate = taken.candidate
         sure = confidence(len(candidate.doubts))
         if sure is None:
-            questions.append(Question(name, f"{quoted(candidate.column.name)} may be it; {'; '.join(candidate.doubts)}"))
+            questions.append(
+                Question(name, f"{quoted(candidate.column.name)} may be it; {'; '.join(candidate.doubts)}")
+            )
             continue
         constant = _kinds(taken, companions.get(candidate.column.position, ()), texts, transiting)
         made.append(_guess(taken, sure))
@@ -113,10 +115,25 @@ def _best(several: list[Candidate], found: dict[int, Beside]) -> Chosen:
             one.column.position,
         ),
     )
-    chosen = Chosen(best, found[best.column.position])
-    chosen.rivals = [(other, is_same(best, other)) for other in several if other is not best]
-    chosen.contested = any(not same and order(other)[:3] == order(best)[:3] for other, same in chosen.rivals)
-    return chosen
+    others = [other for other in several if other is not best]
+    contested = any(order(other)[:3] == order(best)[:3] and not is_same(best, other) for other in others)
+    return Chosen(best, found[best.column.position], [(other, _why(best, other, found)) for other in others], contested)
+
+
+def _why(best: Candidate, other: Candidate, found: dict[int, Beside]) -> str:
+    """Why the best was taken rather than another."""
+    errors, others = found[best.column.position].errors, found[other.column.position].errors
+    if is_same(best, other):
+        return f"the same in {other.unit.unit}" if other.unit.unit != best.unit.unit else "the same"
+    if other.minimum and not best.minimum:
+        return "M sin i"
+    if len(other.doubts) > len(best.doubts):
+        return other.doubts[0]
+    if other.count < ENOUGH * best.count:
+        return f"only {other.count} values"
+    if errors and not others:
+        return "without errors"
+    return "with larger errors" if precision(best, errors) < precision(other, others) else "as good, but further on"
 
 
 def _rank_of_unit(candidate: Candidate) -> int:
@@ -151,6 +168,8 @@ def _kinds(
     candidate, found = taken.candidate, taken.beside
     if candidate.input.name not in KINDS or candidate.column.name == candidate.input.name:
         return None
+    if not candidate.minimum:
+        _minimum_beside(taken)
     column = kinds_of(candidate, companions, texts, found)
     if column is not None:
         found.used.append(column)
@@ -163,7 +182,6 @@ def _kinds(
     elif candidate.minimum:
         kind = KINDS[candidate.input.name][0]
         return Guess(kind, (), "fair", f"{quoted(candidate.column.name)} is M sin i in every row", constant="minimum")
-    _minimum_beside(taken)
     return None
 
 
@@ -171,29 +189,29 @@ def _minimum_beside(taken: Chosen) -> None:
     """M sin i in a column of its own: the mass is at least that."""
     for other, _ in taken.rivals:
         same_unit = other.unit.unit == taken.candidate.unit.unit
-        if other.minimum and not other.unit.possible and same_unit and "lower" not in taken.beside.entry:
+        fills = np.isfinite(other.values) & ~np.isfinite(taken.candidate.values)
+        if other.minimum and fills.any() and same_unit and not other.unit.possible:
             taken.beside.take("lower", other.column)
-            taken.beside.remarks.append(f"where there is no mass, {quoted(other.column.name)} (M sin i) is the least it is")
+            taken.beside.remarks.append(
+                f"where there is no mass, {quoted(other.column.name)} (M sin i) is the least it is"
+            )
 
 
-def _guess(taken: Chosen, sure: Any) -> Guess:
+def _guess(taken: Chosen, sure: Confidence) -> Guess:
     candidate, found = taken.candidate, taken.beside
     reason = "; ".join([*candidate.because, *(f"but {doubt}" for doubt in candidate.doubts)])
     if taken.rivals:
         reason += f"; rather than {_named(taken.rivals)}"
     missing: list[int | float | str] = [*candidate.marks]
-    missing += [word for word, count in candidate.column.strange.most_common(MOST_STRANGE) if count > 1]
+    if candidate.column.is_numeric:
+        missing += [word for word, count in candidate.column.strange.most_common(MOST_STRANGE) if count > 1]
     entry = {"missing": missing, **found.entry} if missing else found.entry
     unit = candidate.unit.unit or schema.catalogue()[candidate.input.name].unit
     sources = (candidate.column.reference,)
     return Guess(candidate.input.name, sources, sure, reason, unit, entry, tuple(found.remarks))
 
 
-def _named(rivals: list[tuple[Candidate, bool]]) -> str:
-    names = []
-    for other, same in rivals[:MOST_RIVALS]:
-        unit = other.unit.unit
-        why = f" (the same in {unit or 'another unit'})" if same else f" ({other.count} values)"
-        names.append(quoted(other.column.name) + why)
+def _named(rivals: list[tuple[Candidate, str]]) -> str:
+    names = [f"{quoted(other.column.name)} ({why})" for other, why in rivals[:MOST_RIVALS]]
     more = len(rivals) - MOST_RIVALS
     return ", ".join(names) + (f" and {more} more" if more > 0 else "")

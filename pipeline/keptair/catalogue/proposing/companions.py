@@ -6,6 +6,7 @@ import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cache
+from itertools import chain
 from typing import Literal
 
 from keptair.catalogue.proposing.naming import LONGEST_NAME, Reading, read_ucd, without_units
@@ -14,7 +15,8 @@ from keptair.catalogue.proposing.vocabulary import words
 
 Role = Literal["error", "plus", "minus", "limit", "upper", "lower", "bare plus", "bare minus", "kind", "remark"]
 SHORTEST_INSIDE = 3  # letters; shorter marks must stand by themselves
-LAST_PIECE = re.compile(r"(?:[A-Z]?[a-z]+|[A-Z]+|\d+|[+-])$")
+LAST_PIECE = re.compile(r"(?:[A-Z]?[a-z]+|[A-Z]+|\d+)$")
+LONE_SIGN = re.compile(r"(?<![^\W_])[+-](?![^\W_])|[+-]$")
 BEFORE = {"e": "error", "l": "limit", "f": "remark", "n": "remark", "r": "remark", "q": "remark", "u": "remark"}
 
 
@@ -26,18 +28,29 @@ class Companion:
     column: Column
 
 
-def companions(columns: Sequence[Column], readings: Sequence[Reading]) -> dict[int, list[Companion]]:
-    """Position of a column → those that speak of it. A kind may be that of a quantity given in two units."""
+def companions(
+    columns: Sequence[Column], readings: Sequence[Reading], descriptions: Sequence[Reading]
+) -> dict[int, list[Companion]]:
+    """Position of a column → those that speak of it. A kind may be that of a quantity given in two units.
+
+    readings, descriptions : of each column's name and description.
+    """
     by_stem: dict[str, list[Column]] = {}
     by_bare_stem: dict[str, list[Column]] = {}
-    for column, reading in zip(columns, readings, strict=True):
+    meant: set[int] = set()  # columns of which something is said
+    for column, reading, description in zip(columns, readings, descriptions, strict=True):
         by_stem.setdefault(stem(column.name), []).append(column)
+        if reading.quantity or description.quantity or read_ucd(column.about.ucd) not in ("", "error"):
+            meant.add(column.position)
         if reading.quantity:
             by_bare_stem.setdefault(without_units(column.name), []).append(column)
     found: dict[int, list[Companion]] = {}
     for column in columns:
-        for role, rest in _roles(column.name):
+        before = list(_before(column.name))
+        for role, rest in chain(before, _roles(column.name)):
             of = [other for other in by_stem.get(rest, by_bare_stem.get(rest, ())) if other is not column]
+            if role == "remark" or (role, rest) in before:  # one letter says little
+                of = [other for other in of if other.position in meant]
             if len(of) == 1 or (of and role == "kind"):
                 for other in of:
                     found.setdefault(other.position, []).append(Companion(role, column))
@@ -53,16 +66,15 @@ def is_companion(column: Column, found: dict[int, list[Companion]]) -> bool:
 
 
 def stem(name: str) -> str:
-    """A name without separators and cases; a sign at the end stays."""
-    sign = name[-1:] if name[-1:] in ("+", "-") else ""
-    return re.sub(r"[\W_]", "", name.lower()) + sign
+    """A name without separators and cases, a sign that stands alone or at the end in words."""
+    signed = LONE_SIGN.sub(lambda sign: "plus" if sign[0] == "+" else "minus", name.lower())
+    return re.sub(r"[\W_]", "", signed)
 
 
 def _roles(name: str) -> Iterator[tuple[Role, str]]:
     """What a name may be to another column, and the stem that must then be the other's."""
     if len(name) > LONGEST_NAME:
         return
-    yield from _before(name)
     whole = stem(name)
     last = LAST_PIECE.search(name)
     for mark, role in _marks():
@@ -79,7 +91,7 @@ def _roles(name: str) -> Iterator[tuple[Role, str]]:
 def _before(name: str) -> Iterator[tuple[Role, str]]:
     """e_Rp, E_Rp, l_Rp, as the tables of journals have them: E the upper error where both are there."""
     letter, separator = name[:1], name[1:2]
-    if separator not in ("_", " ") or not separator:
+    if separator not in ("_", " ") or not separator or len(name) > LONGEST_NAME or stem(name) in words().symbols:
         return
     if letter == "E":
         yield "plus", stem(name[2:])
@@ -98,7 +110,6 @@ def _marks() -> tuple[tuple[str, Role], ...]:
     bare: dict[str, Role] = {"plus": "bare plus", "minus": "bare minus"}
     limits: dict[str, Role] = {"": "limit", "plus": "upper", "minus": "lower"}
     marks |= {word: bare[side] for word, side in known.bare_sides.items()}
-    marks |= {"+": "plus", "-": "minus"}
     marks |= dict.fromkeys(known.errors, "error")
     for word in known.errors:
         for side, which in known.sides.items():

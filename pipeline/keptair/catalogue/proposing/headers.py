@@ -16,6 +16,7 @@ from keptair.errors import CatalogueError
 
 LONGEST_HEADER = 1 << 20  # bytes
 LONGEST_DESCRIPTION = 300
+LONGEST_LINE = 1000  # that may describe a column
 COMMENTED = re.compile(r"^\s*[#\\%]+\s*(?:COLUMN\s+)?([^\s:=#]+)\s*[:=]\s+(\S.*)$")
 BYTES = re.compile(r"^\s*\d+(?:\s*-\s*\d+)?\s+[AIFED]\d[\d.]*\s+\S+\s+(\S+)\s+(\S.*)$")
 
@@ -77,10 +78,16 @@ def _of_votable(start: bytes) -> dict[str, Described]:
 
 def _of_ecsv(text: str) -> Iterator[tuple[str, Described]]:
     lines = [line[1:].removeprefix(" ") for line in text.splitlines() if line.startswith("#")]
-    columns = description("\n".join(line for line in lines if not line.startswith("%ECSV")), "header").get("datatype")
+    yield from _of_yaml("\n".join(line for line in lines if not line.startswith("%ECSV")))
+
+
+def _of_yaml(text: str) -> Iterator[tuple[str, Described]]:
+    columns = description(text, "header").get("datatype")
     for column in columns if isinstance(columns, list) else []:
         if isinstance(column, dict):
             meta = column.get("meta")
+            if isinstance(meta, list):  # an ordered mapping
+                meta = dict(pair for pair in meta if isinstance(pair, tuple))
             ucd = meta.get("ucd", "") if isinstance(meta, dict) else ""
             yield str(column.get("name")), Described(_short(column.get("description")), _short(ucd))
 
@@ -88,7 +95,7 @@ def _of_ecsv(text: str) -> Iterator[tuple[str, Described]]:
 def _of_lines(text: str) -> Iterator[tuple[str, Described]]:
     """Comment lines that describe a column, and the byte-by-byte description of journal tables."""
     for line in text.splitlines():
-        found = COMMENTED.match(line) or BYTES.match(line)
+        found = (COMMENTED.match(line) or BYTES.match(line)) if len(line) <= LONGEST_LINE else None
         if found:
             yield found[1], Described(_short(found[2]))
 
@@ -116,9 +123,13 @@ def _of_parquet(file: Path) -> Iterator[tuple[str, Described]]:
         return
     metadata = schema.metadata or {}
     with suppress(CatalogueError):
+        yield from _of_yaml(metadata.get(b"table_meta_yaml", b"").decode("utf-8", "replace"))
+    with suppress(CatalogueError):
         yield from _of_votable(metadata.get(b"IVOA.VOTable-Parquet.content", b"")).items()
     for field in schema:
-        about = {key.decode("latin-1"): value.decode("utf-8", "replace") for key, value in (field.metadata or {}).items()}
+        about = {
+            key.decode("latin-1"): value.decode("utf-8", "replace") for key, value in (field.metadata or {}).items()
+        }
         if "description" in about or "ucd" in about:
             yield field.name, Described(_short(about.get("description")), about.get("ucd", ""))
 

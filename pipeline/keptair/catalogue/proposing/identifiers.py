@@ -19,6 +19,7 @@ LIKE_A_PLANET = re.compile(r"(?:[\s\d_)\]-][b-k]|\.0?\d{1,2})$")  # Brim 4 b, K0
 LOOKED_AT = 2000  # different names
 DIFFERENT = 0.95  # share of different names a column of planets has at least
 FULL = 0.98
+FEWEST_STARS = 0.1  # for each planet
 
 
 @dataclass(frozen=True)
@@ -49,7 +50,7 @@ def guess_planet(names: Sequence[Names]) -> tuple[Guess | None, Question | None,
     own = [name for name in possible if name.column.name == "planet_id"]
     doubted = {name.column.position: _doubts_of_planet(name) for name in possible}
     ranked = sorted(own or possible, key=lambda name: (len(doubted[name.column.position]), -round(name.share, 2)))
-    if not ranked or not ranked[0].column.words:
+    if not ranked or not (own or ranked[0].column.words):
         return None, Question("planet_id", "no column names the planet; say [columns.planet_id] from = …"), []
     best = ranked[0]
     doubts = doubted[best.column.position]
@@ -75,7 +76,7 @@ def guess_host(names: Sequence[Names], planet: Sequence[Column]) -> tuple[Guess 
     """A star before a system; the planets' names may begin with it."""
     taken = {column.position for column in planet}
     possible = [name for name in names if name.subject in ("star", "system") and name.column.position not in taken]
-    possible = [name for name in possible if name.column.words]
+    possible = [name for name in possible if name.column.words or name.column.name == "host_id"]
     if not possible:
         return None, None, []
     begins = {name.column.position: _begins(planet, name.column) for name in possible}
@@ -94,6 +95,8 @@ def guess_host(names: Sequence[Names], planet: Sequence[Column]) -> tuple[Guess 
     doubts = list(best.doubts)
     if best.column.is_numeric and best.column.name != "host_id":
         doubts.append("it holds only numbers")
+    if planet and len(best.column.words) < FEWEST_STARS * len(planet[0].words) and best.column.name != "host_id":
+        doubts.append(f"only {len(best.column.words)} differ")
     sure = confidence(len(doubts))
     if sure is None:
         return None, Question("host_id", f"{quoted(best.column.name)} may name the star; {'; '.join(doubts)}"), []
@@ -106,7 +109,7 @@ def guess_host(names: Sequence[Names], planet: Sequence[Column]) -> tuple[Guess 
     return Guess("host_id", (best.column.reference,), sure, reason), None, [best.column]
 
 
-def names(columns: Sequence[Column], readings: Sequence[tuple[Reading, Reading]]) -> list[Names]:
+def columns_of_names(columns: Sequence[Column], readings: Sequence[tuple[Reading, Reading]]) -> list[Names]:
     """Columns that say they name something."""
     found = []
     for column, (name, description) in zip(columns, readings, strict=True):
@@ -115,19 +118,24 @@ def names(columns: Sequence[Column], readings: Sequence[tuple[Reading, Reading]]
             continue
         named = name.quantity == "name" or (not name.quantity and name.subject and not name.unknown)
         described = description.quantity == "name" and not name.quantity
-        if name.other or not (named or described or read_ucd(column.about.ucd) == "name"):
+        if name.other:
+            continue
+        if not (named or described or read_ucd(column.about.ucd) == "name"):
+            if name.unknown and not column.is_numeric and _alike(column) > 0.5:
+                found.append(Names(column, "planet", ("only its words look like names of planets",)))
             continue
         doubts = [f"{quoted(word, 20)} in its name is not understood" for word in name.unknown[:1]]
         if name.usually:
             doubts.append("the word has other meanings")
+        if description.quantity == "name":
+            doubts = []
         found.append(Names(column, name.subject or description.subject, tuple(doubts)))
     return found
 
 
 def _doubts_of_planet(name: Names) -> list[str]:
     column, doubts = name.column, list(name.doubts)
-    seen = list(islice(column.words, LOOKED_AT))
-    alike = sum(bool(LIKE_A_PLANET.search(word)) for word in seen) / max(1, len(seen))
+    alike = _alike(column)
     if name.subject != "planet" and alike < 0.5:
         doubts.append("nothing says that it is the planet's")
     if name.different < DIFFERENT:
@@ -139,6 +147,12 @@ def _doubts_of_planet(name: Names) -> list[str]:
     if column.is_numeric and alike < 0.5:
         doubts.append("it holds only numbers")
     return doubts
+
+
+def _alike(column: Column) -> float:
+    """Share of the words that look like names of planets."""
+    seen = list(islice(column.words, LOOKED_AT))
+    return sum(bool(LIKE_A_PLANET.search(word)) for word in seen) / max(1, len(seen))
 
 
 def _fills(other: Names, best: Names) -> bool:

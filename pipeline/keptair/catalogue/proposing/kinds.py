@@ -36,7 +36,9 @@ def kinds_of(
         for column in texts:
             kinds = _translated(column, possible)
             if "minimum" in kinds.values() and column not in own:
-                found.remarks.append(f"{quoted(column.name)} speaks of M sin i; it was taken for the kinds of this mass")
+                found.remarks.append(
+                    f"{quoted(column.name)} speaks of M sin i; it was taken for the kinds of this mass"
+                )
                 return _taken(column, kinds, found)
     return None
 

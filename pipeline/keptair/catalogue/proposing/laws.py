@@ -13,7 +13,8 @@ EARTH_DENSITY = 5.51  # g/cm3
 DENSITIES = (0.15, 20.0)  # g/cm3, between which the median of a catalogue lies
 DAYS = 365.25
 AGREES = 0.05  # dex: so near Kepler's third law must come, half of the planets
-FEWEST = 5
+SAME = 0.01  # relative difference, half of the rows
+FEWEST = 5  # rows to judge by
 
 
 def settled_by_density(radius: Candidate, mass: Candidate) -> None:
@@ -26,9 +27,9 @@ def settled_by_density(radius: Candidate, mass: Candidate) -> None:
     for unit in candidate.unit.possible:
         factor = conversion(unit, candidate.input.name)
         values = factor.values(rough(candidate.column.numbers))
-        density = _density(mass.values, values) if candidate is radius else _density(values, radius.values)
-        if len(density) >= FEWEST and DENSITIES[0] < float(np.median(density)) < DENSITIES[1]:
-            likely.append((unit, factor, float(np.median(density))))
+        densities = _densities(mass.values, values) if candidate is radius else _densities(values, radius.values)
+        if len(densities) >= FEWEST and DENSITIES[0] < float(np.median(densities)) < DENSITIES[1]:
+            likely.append((unit, factor, float(np.median(densities))))
     if len(likely) == 1:
         [(unit, factor, density)] = likely
         candidate.in_unit(UnitGuess(unit, factor))
@@ -39,24 +40,18 @@ def settled_by_density(radius: Candidate, mass: Candidate) -> None:
 def confirmed_by_kepler(period: Candidate, axis: Candidate, mass: Candidate | None) -> bool:
     """Whether P² M = a³ holds, in years, solar masses and au; the Sun's mass stands in for missing ones."""
     masses = np.ones(len(period.values)) if mass is None else np.where(mass.values > 0, mass.values, 1.0)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        ratio = np.log10((period.values / DAYS) ** 2 * masses / axis.values**3)
+    ratio = np.log10((period.values / DAYS) ** 2 * masses / axis.values**3)
     ratio = ratio[np.isfinite(ratio)]
     return len(ratio) >= FEWEST and abs(float(np.median(ratio))) < AGREES
 
 
 def is_same(one: Candidate, other: Candidate) -> bool:
     """Whether two columns hold the same measurements, be it in different units."""
-    with np.errstate(divide="ignore", invalid="ignore"):
-        ratio = one.column.numbers / other.column.numbers
-    ratio = ratio[np.isfinite(ratio) & (ratio > 0)]
-    if not len(ratio):
-        return False
-    middle = float(np.median(ratio))
-    return float(np.median(np.abs(ratio / middle - 1.0))) < 0.01
+    difference = np.abs(one.values / other.values - 1.0)
+    difference = difference[np.isfinite(difference)]
+    return len(difference) >= FEWEST and float(np.median(difference)) < SAME
 
 
-def _density(mass: Floats, radius: Floats) -> Floats:
-    with np.errstate(divide="ignore", invalid="ignore"):
-        density = EARTH_DENSITY * mass / radius**3
+def _densities(mass: Floats, radius: Floats) -> Floats:
+    density = EARTH_DENSITY * mass / radius**3
     return density[np.isfinite(density) & (density > 0)]

@@ -55,6 +55,16 @@ class Question:
 
 
 @dataclass(frozen=True)
+class Hint:
+    """A filter of rows the user may want; side is keep or drop."""
+
+    text: str
+    side: Literal["keep", "drop"]
+    column: str
+    words: tuple[str, ...]
+
+
+@dataclass(frozen=True)
 class Proposal:
     """A column map for somebody to read, correct and use.
 

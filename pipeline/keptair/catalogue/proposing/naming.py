@@ -6,7 +6,7 @@ import re
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
-from functools import cache
+from functools import lru_cache
 
 from keptair.catalogue.proposing.vocabulary import Words, words
 
@@ -67,8 +67,8 @@ def read_name(name: str) -> Reading:
     brackets = BRACKETS.search(name)
     unit = brackets[1].strip() if brackets else ""
     bare = name[: brackets.start()] if brackets else name
-    if brackets and not (PIECES.search(bare) and not {piece.lower() for piece in PIECES.findall(bare)} <= _logs()):
-        bare, unit = name, ""  # log(L) is no L in brackets
+    if all(piece.lower() in words().logarithm for piece in PIECES.findall(bare)):
+        bare, unit = name, ""  # what is in brackets is the name: log(L)
     pieces = PIECES.findall(bare)
     tokens: list[str] = []
     glued = False
@@ -96,7 +96,8 @@ def read_description(text: str) -> Reading:
     brackets = BRACKETS.search(text.strip().rstrip("."))
     known = words()
     tokens = [piece.lower() for piece in _phrases(PIECES.findall(text)[:12])]
-    reading = Reading(unit=brackets[1].strip() if brackets else "")
+    logarithm = any(token in known.logarithm for token in tokens)
+    reading = Reading(unit=brackets[1].strip() if brackets else "", logarithm=logarithm)
     for token in tokens:
         if token in known.others and not reading.quantity:
             return replace(reading, other=True)
@@ -175,8 +176,8 @@ def _with_quantity(reading: Reading, quantities: list[str], letters: list[str]) 
     brief = False
     if not quantities and not reading.other:
         implied = [known.units[word].implies for word in reading.unit_words if known.units[word].implies]
-        brief = bool(letters or implied)
-        if letters and letters[0] in known.letters:
+        brief = True
+        if letters and letters[0] in known.letters and not reading.unknown:
             quantities, letters = [known.letters[letters[0]]], letters[1:]
         else:
             quantities = implied[:1]
@@ -189,7 +190,7 @@ def _with_quantity(reading: Reading, quantities: list[str], letters: list[str]) 
         quantity=quantities[0] if len(quantities) == 1 else "",
         other=reading.other or len(quantities) > 1,
         brief=brief,
-        subject=reading.subject or _one_subject(as_subject),
+        subject=_one_subject([reading.subject, *as_subject]),
         unit_words=(*reading.unit_words, *(letter for letter in letters if letter in known.units)),
         unknown=(
             *reading.unknown,
@@ -237,7 +238,7 @@ def _taken_apart(piece: str) -> tuple[list[str], bool]:
     return [piece.lower()], False
 
 
-@cache
+@lru_cache(4096)
 def _segmented(piece: str) -> tuple[tuple[str, ...], bool]:
     """The fewest known words that make up the piece; nothing if there are none.
 
@@ -278,7 +279,3 @@ def _letter_at_the_end(word: str, start: int, last: bool) -> bool:
 def _beginning(name: str) -> str:
     pieces = PIECES.findall(name[:LONGEST_NAME])
     return pieces[0].lower() if pieces else ""
-
-
-def _logs() -> frozenset[str]:
-    return words().logarithm

@@ -7,10 +7,13 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
+import numpy as np
+
 from keptair.catalogue import fetching
 from keptair.catalogue.proposing import choosing, identifiers, texts
 from keptair.catalogue.proposing.candidates import Candidate, candidates, meaning
 from keptair.catalogue.proposing.companions import companions, is_companion
+from keptair.catalogue.proposing.hints import hints
 from keptair.catalogue.proposing.model import Guess, Proposal, Question
 from keptair.catalogue.proposing.naming import read_description, read_names
 from keptair.catalogue.proposing.sampling import Column, Sample, sample
@@ -21,7 +24,7 @@ from keptair.tables import schema
 
 def propose(source: str | Path) -> Proposal:
     """Look at a catalogue's header and its first rows, and propose which column is which canonical input."""
-    with _lying_here(str(source)) as path:
+    with _lying_here(str(source)) as path, np.errstate(all="ignore"):  # whatever numbers the file holds
         return _Proposer(sample(path), path.name).proposal()
 
 
@@ -34,7 +37,7 @@ class _Proposer:
         self.columns = seen.columns
         self.readings = read_names([column.name for column in self.columns])
         self.descriptions = [read_description(column.about.description) for column in self.columns]
-        self.companions = companions(self.columns, self.readings)
+        self.companions = companions(self.columns, self.readings, self.descriptions)
         own = schema.catalogue().names
         self.free = [
             position
@@ -47,7 +50,9 @@ class _Proposer:
 
     def proposal(self) -> Proposal:
         columns = [(self.columns[place], self.readings[place], self.descriptions[place]) for place in self.free]
-        names = identifiers.names([column for column, _, _ in columns], [(name, about) for _, name, about in columns])
+        names = identifiers.columns_of_names(
+            [column for column, _, _ in columns], [(name, about) for _, name, about in columns]
+        )
         planet = self._take(identifiers.guess_planet(names))
         self._take(identifiers.guess_host(names, planet))
         for find in (texts.guess_transits, texts.guess_updated, texts.guess_background):
@@ -65,7 +70,7 @@ class _Proposer:
             self._about(),
             guesses,
             questions,
-            [(column.name, gone) for column, gone in texts.dropped(columns)],
+            hints([(column, name) for column, name, _ in columns], planet),
             [name for name in inputs if name not in self.guesses and name not in asked and "_kind" not in name],
             [column.name for column in self.columns if column.position not in self.used],
         )
@@ -102,7 +107,9 @@ class _Proposer:
             if what.subject in ("planet", "star"):
                 said.setdefault(what.quantity, set()).add(what.subject)
         return [
-            candidate for column, what in found for candidate in candidates(column, what, said.get(what.quantity, set()))
+            candidate
+            for column, what in found
+            for candidate in candidates(column, what, said.get(what.quantity, set()))
         ]
 
     def _about(self) -> str:

@@ -85,7 +85,7 @@ class Input:
 def words() -> Words:
     """The words of words.toml."""
     read = _toml("words")
-    units = {}
+    units: dict[str, UnitWord] = {}
     for entry in read["units"].values():
         spellings = {key: value for key, value in entry.items() if key not in ("words", "implies")}
         units |= dict.fromkeys(entry["words"].split(), UnitWord(spellings, entry.get("implies", "")))

@@ -6,12 +6,13 @@ import textwrap
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
-from keptair.catalogue.proposing.model import Guess, Question
+from keptair.catalogue.proposing.model import Guess, Hint, Question
 from keptair.catalogue.showing import quoted, shown
 
 WIDTH = 110
 LEFT_OVER = 60  # columns named at the end
 ESCAPES = {'"': '\\"', "\\": "\\\\", "\n": "\\n", "\t": "\\t", "\r": "\\r", "\b": "\\b", "\f": "\\f"}
+PLAIN = ("missing", "plus", "minus", "bound", "upper", "lower", "without_error", "kind", "date")  # keys in this order
 TABLES = ("kinds", "words")
 
 
@@ -19,11 +20,11 @@ def toml(
     about: str,
     guesses: Sequence[Guess],
     questions: Sequence[Question],
-    drops: Sequence[tuple[str, Sequence[str]]],
+    hints: Sequence[Hint],
     nothing_for: Sequence[str],
     left_over: Sequence[str],
 ) -> str:
-    """The column map. about : the file in a few words; drops : columns and words of rows to leave out, as a hint."""
+    """The column map. about : the file in a few words; nothing_for : inputs; left_over : columns."""
     lines = [*_comment(about), ""]
     for guess in guesses:
         if guess.sources:
@@ -38,9 +39,9 @@ def toml(
         lines.append("# Not guessed:")
         for question in questions:
             lines += _comment(f"{question.name}: {question.text}", "  ")
-    for column, words in drops:
-        lines += _comment("Rows of planets that are none, as it seems; without the # they are left out:")
-        lines += ["# [rows.drop]", f"# {literal(column)} = {literal(list(words))}"]
+    for hint in hints:
+        lines += _comment(f"To {hint.side} {hint.text}, take away the #:")
+        lines += [f"# [rows.{hint.side}]", f"# {literal(hint.column)} = {literal(list(hint.words))}"]
     if nothing_for:
         lines += _comment(f"Nothing found for {', '.join(nothing_for)}.")
     if left_over:
@@ -68,9 +69,9 @@ def _entry(guess: Guess) -> Iterator[str]:
     yield f"from = {literal(sources)}"
     if guess.unit:
         yield f"unit = {literal(guess.unit)}"
-    for key, value in guess.entry.items():
-        if key not in TABLES:
-            yield f"{key} = {literal(value)}"
+    for key in PLAIN:
+        if key in guess.entry:
+            yield f"{key} = {literal(guess.entry[key])}"
     for key in TABLES:
         if key in guess.entry:
             yield from _table(f"columns.{guess.name}.{key}", guess.entry[key])
@@ -94,6 +95,6 @@ def _escaped(letter: str) -> str:
     if letter in ESCAPES:
         return ESCAPES[letter]
     code = ord(letter)
-    if code < 0x20 or code == 0x7F:
-        return f"\\u{code:04X}"
-    return letter
+    if letter.isprintable():
+        return letter
+    return f"\\u{code:04X}" if code < 0x10000 else f"\\U{code:08X}"
