@@ -42,7 +42,9 @@ VARIABLES = (
     "stellar_xray_luminosity_w",
 )
 STELLAR = frozenset(name for name in VARIABLES if name.startswith("stellar_")) | {"xuv_level"}
-GENERATORS = {256: 251, 512: 251, 1024: 999, 2048: 1245}  # good rank-1 lattices of Korobov form, found by search
+# Good rank-1 lattices of Korobov form, found by search. That of 512, the default, erred least in retention over 434
+# undecided bodies: rms 0.008, worst 0.03.
+GENERATORS = {256: 251, 512: 55, 1024: 999, 2048: 1245}
 OPEN_INTERVAL = (2.0**-53, 1 - 2.0**-53)
 
 

@@ -75,10 +75,9 @@ def test_the_default_epochs_and_draws_are_enough(well_known: tuple[Rows, np.ndar
     assert abs(mean) < 0.004
 
 
-def test_with_wide_error_bars_they_are_hardly_worse(loosely_known: tuple[Rows, np.ndarray]) -> None:
-    """Three variables more: an rms error of 0.011–0.012 was found over 765 such bodies."""
+def test_with_wide_error_bars_they_are_enough_too(loosely_known: tuple[Rows, np.ndarray]) -> None:
     rms, largest, _ = errors(loosely_known)
-    assert rms <= 1.3 * LARGEST_RMS
+    assert rms <= LARGEST_RMS
     assert largest <= LARGEST
 
 

@@ -137,7 +137,7 @@ def test_row_rules_name_the_row_that_stays_and_the_cells_that_were_found() -> No
         for row, reason in zip(broken.rows, broken.reasons, strict=True)
     }
     assert found == {
-        ("identifier", 1): "The row has no planet_id.",
+        ("identifier", 1): "There is no planet_id.",
         ("identifier", 2): "planet_id has 129 characters; 128 are allowed.",
         ("duplicate", 3): "Row 1 has the same planet_id; it is newer or fuller, or comes first, and stays.",
         ("cells", 4): "The row has 7 cells, not as many as the header.",
