@@ -1,5 +1,22 @@
 """Every failure a user can meet, each with its exit code."""
 
+from __future__ import annotations
+
+import unicodedata
+
+HIDDEN = {"Cc", "Cf", "Cs", "Co", "Cn", "Zl", "Zp"}  # control, format and bidirectional marks, line separators
+LONGEST_MESSAGE = 4000  # characters, about; nobody reads on
+LONGEST_LINE = 2000
+
+
+def visible(text: str) -> str:
+    """The text with hidden characters written out: what a stranger named cannot move the cursor."""
+    return "".join(_written_out(letter) if unicodedata.category(letter) in HIDDEN else letter for letter in text)
+
+
+def _written_out(letter: str) -> str:
+    return letter.encode("unicode_escape").decode("ascii")
+
 
 class KeptairError(Exception):
     """An expected failure: one sentence saying what is wrong, and what to try.
@@ -16,9 +33,14 @@ class KeptairError(Exception):
         super().__init__(self.message())
 
     def message(self) -> str:
-        lines = [self.summary, *("  " + problem for problem in self.problems)]
+        lines = [_line(self.summary)]
+        for number, problem in enumerate(self.problems):
+            lines.append("  " + _line(problem))
+            if sum(map(len, lines)) > LONGEST_MESSAGE and number + 1 < len(self.problems):
+                lines.append(f"  and {len(self.problems) - number - 1} more")
+                break
         if self.hint:
-            lines.append(f"Try: {self.hint}")
+            lines.append(f"Try: {_line(self.hint)}")
         return "\n".join(lines)
 
 
@@ -64,3 +86,8 @@ class StoppedError(KeptairError):
     def __init__(self, signal_number: int) -> None:
         self.exit_code = 128 + signal_number
         super().__init__("stopped; nothing was published")
+
+
+def _line(text: str) -> str:
+    half = (LONGEST_LINE - 1) // 2
+    return visible(text if len(text) <= LONGEST_LINE else f"{text[:half]}…{text[-half:]}")

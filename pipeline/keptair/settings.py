@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import json
-import tomllib
 from collections.abc import Iterator, Mapping
 from pathlib import Path
 from typing import Annotated, Any, Literal, Self
 
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, PrivateAttr, ValidationError, model_validator
 
+from keptair import toml_files
 from keptair.errors import SettingsError
 from keptair.reference import load_backgrounds, load_gases
 from keptair.reference.models import Background, Gas
@@ -205,14 +205,8 @@ def _merge(old: Mapping[str, Any], new: Mapping[str, Any]) -> dict[str, Any]:
 
 
 def _read_file(path: Path) -> dict[str, Any]:
-    try:
-        return tomllib.loads(path.read_text(encoding="utf-8"))
-    except OSError as error:
-        raise SettingsError(f"{path}: cannot be read ({error.strerror})") from None
-    except UnicodeDecodeError:
-        raise SettingsError(f"{path}: is not UTF-8 text") from None
-    except tomllib.TOMLDecodeError as error:
-        raise SettingsError(f"{path}: is not TOML ({error})") from None
+    values, _ = toml_files.read(path, SettingsError)
+    return values
 
 
 def _sentence(problem: Any) -> str:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import tomllib
 from collections.abc import Mapping
 from dataclasses import asdict, dataclass
 from pathlib import Path
@@ -10,6 +9,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, ValidationError
 
+from keptair import toml_files
 from keptair.errors import SettingsError
 from keptair.physics.constants import EARTH_MASS, EARTH_RADIUS, GRAVITATION
 from keptair.records import from_records
@@ -75,7 +75,8 @@ def verify(settings: Settings, bodies_file: Path | None = None) -> list[Outcome]
     reference = read_toml("solar_system")
     bodies = _bodies(reference["bodies"], "solar_system.toml")
     if bodies_file is not None:
-        bodies |= _bodies(_read(bodies_file).get("bodies", {}), str(bodies_file))
+        found, _ = toml_files.read(bodies_file, SettingsError)
+        bodies |= _bodies(found.get("bodies", {}), str(bodies_file))
     unknown = sorted({body.background for body in bodies.values()} - {"", *settings.backgrounds})
     if unknown:
         raise SettingsError(f"bodies name backgrounds the settings do not know: {', '.join(unknown)}")
@@ -121,12 +122,3 @@ def _bodies(entries: Mapping[str, Any], where: str) -> dict[str, Body]:
     if problems:
         raise SettingsError(f"{where}: bodies that cannot be used ({len(problems)} problems)", problems)
     return bodies
-
-
-def _read(path: Path) -> dict[str, Any]:
-    try:
-        return tomllib.loads(path.read_text(encoding="utf-8"))
-    except OSError as error:
-        raise SettingsError(f"{path}: cannot be read ({error.strerror})") from None
-    except (UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
-        raise SettingsError(f"{path}: is not TOML ({error})") from None

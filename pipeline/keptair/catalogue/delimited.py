@@ -18,6 +18,7 @@ from keptair.errors import CatalogueError
 
 DELIMITERS = {",": "CSV", "\t": "TSV", ";": "text with semicolons", "|": "text with bars", " ": "text with blanks"}
 ROWS = 1 << 16  # in one block, where they do not come parsed
+MOST_COLUMNS = 100_000
 BLOCK = 8 << 20  # bytes parsed together; a row must fit into one block
 
 
@@ -29,6 +30,8 @@ def open_delimited(path: Path, comment: str, delimiter: str = "") -> RawTable:
         raise CatalogueError(f"{path.name}: the file is empty")
     text = header.decode("utf-8", errors="replace").rstrip("\r\n")
     delimiter = delimiter or delimiter_of(text)
+    if text.count(delimiter) >= MOST_COLUMNS:
+        raise CatalogueError(f"{path.name}: the first line has more than {MOST_COLUMNS} cells; this is no table")
     names = tuple(name.strip() for name in cells_of(text, delimiter))
     reader = _Reader(path, encoding, comment, header, delimiter, len(names))
     remarks = [] if encoding == "utf-8" else [f"the file is not UTF-8; it was read as {encoding}"]
@@ -93,18 +96,22 @@ class _Reader:
             return
         names = [str(position) for position in range(self.width)]
         wanted = [str(position) for position in positions]
-        yield from arrow_csv.open_csv(
-            Readable(_chain(first, rest)),
-            read_options=arrow_csv.ReadOptions(use_threads=False, block_size=BLOCK, column_names=names),
-            parse_options=arrow_csv.ParseOptions(
-                delimiter=self.delimiter, newlines_in_values=True, invalid_row_handler=ragged.note
-            ),
-            convert_options=arrow_csv.ConvertOptions(
-                column_types={name: pa.string() for name in wanted},
-                include_columns=wanted,
-                strings_can_be_null=False,
-            ),
-        )
+        source = Readable(_chain(first, rest))
+        try:
+            yield from arrow_csv.open_csv(
+                source,
+                read_options=arrow_csv.ReadOptions(use_threads=False, block_size=BLOCK, column_names=names),
+                parse_options=arrow_csv.ParseOptions(
+                    delimiter=self.delimiter, newlines_in_values=True, invalid_row_handler=ragged.note
+                ),
+                convert_options=arrow_csv.ConvertOptions(
+                    column_types={name: pa.string() for name in wanted},
+                    include_columns=wanted,
+                    strings_can_be_null=False,
+                ),
+            )
+        finally:
+            source.stop()
 
 
 class _Ragged:

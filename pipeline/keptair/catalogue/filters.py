@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import fnmatch
 import re
 from collections.abc import Mapping
 from typing import Any
@@ -46,4 +47,4 @@ def _pattern(word: Any) -> str:
         return f"(?i:{word})"
     if isinstance(word, int | float):
         return re.escape(cells.without_point_zero(str(word)))
-    return re.escape(word).replace(r"\*", ".*").replace(r"\?", ".")
+    return fnmatch.translate(word.replace("[", "[[]"))

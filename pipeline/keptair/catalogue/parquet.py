@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections import Counter
+from collections.abc import Container, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 from typing import Any
@@ -11,6 +12,7 @@ import numpy as np
 
 from keptair.catalogue.ecsv import description, units_of
 from keptair.catalogue.showing import quoted, shown
+from keptair.catalogue.streams import INFLATION_FLOOR, INFLATION_LIMIT
 from keptair.catalogue.table import Block, RawTable
 from keptair.catalogue.votable import fields_of
 from keptair.errors import CatalogueError
@@ -33,9 +35,12 @@ def open_parquet(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every 
     files = files_of(path)
     with _readable(files[0]) as parquet:
         schema = parquet.schema_arrow
-    names = tuple(name for name in schema.names if not _is_mask(name, schema))
+    count = Counter(schema.names)
+    masks_there = {field.name for field in schema if _is_mask(field, count)}
+    fields = [field for field in schema if field.name not in masks_there]
+    names = tuple(field.name for field in fields)
     described = _described_units(schema)
-    units = tuple(_unit(schema, name) or described.get(name, "") for name in names)
+    units = tuple(_unit(field) or described.get(field.name, "") for field in fields)
 
     def blocks(positions: tuple[int, ...], remarks: list[str]) -> Iterator[Block]:  # noqa: ARG001
         row = 1
@@ -44,7 +49,10 @@ def open_parquet(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every 
                 if parquet.schema_arrow.names != schema.names:
                     raise CatalogueError(f"{file.name}: has other columns than {files[0].name}; put them into one form")
                 wanted = [names[position] for position in positions]
-                masks = [f"{name}.mask" for name in wanted if f"{name}.mask" in schema.names]
+                masks = [f"{name}.mask" for name in wanted if f"{name}.mask" in masks_there]
+                for name in wanted + masks:
+                    if count[name] > 1:
+                        raise CatalogueError(f"{file.name}: two columns are called {quoted(name)}; rename one of them")
                 for batch in parquet.iter_batches(batch_size=ROWS, columns=wanted + masks, use_threads=False):
                     rows = np.arange(row, row + batch.num_rows, dtype=np.int64)
                     row += batch.num_rows
@@ -62,21 +70,32 @@ def _readable(file: Path) -> Iterator[Any]:
 
     try:
         with pq.ParquetFile(file) as parquet:
+            _check_room(parquet.metadata, file)
             yield parquet
     except (pa.ArrowException, OSError, MemoryError, OverflowError, ValueError) as error:
         raise CatalogueError(f"{file.name}: cannot be read as Parquet ({shown(str(error), 160)})") from None
 
 
-def _is_mask(name: str, schema: Any) -> bool:
+def _check_room(metadata: Any, file: Path) -> None:
+    """A row group is in memory whole, whatever it inflates to."""
+    largest = max((metadata.row_group(place).total_byte_size for place in range(metadata.num_row_groups)), default=0)
+    if largest > max(INFLATION_FLOOR, INFLATION_LIMIT * file.stat().st_size):
+        raise CatalogueError(
+            f"{file.name}: a row group inflates to {largest / 1e6:.0f} MB, more than {INFLATION_LIMIT} times the file",
+            hint="write it in smaller row groups if it is what you think it is",
+        )
+
+
+def _is_mask(field: Any, names: Container[str]) -> bool:
     import pyarrow as pa
 
-    of = name.removesuffix(".mask")
-    return of != name and of in schema.names and bool(pa.types.is_boolean(schema.field(name).type))
+    of = field.name.removesuffix(".mask")
+    return of != field.name and of in names and bool(pa.types.is_boolean(field.type))
 
 
-def _unit(schema: Any, name: str) -> str:
+def _unit(field: Any) -> str:
     """The unit in the field's metadata, where pyarrow users put it."""
-    metadata = schema.field(schema.names.index(name)).metadata or {}
+    metadata = field.metadata or {}
     return (metadata.get(b"unit") or metadata.get(b"units") or b"").decode("utf-8", errors="replace")
 
 
@@ -96,14 +115,21 @@ def _column(batch: Any, name: str, file: Path) -> Any:
     import pyarrow.compute as pc
 
     column = batch.column(name)
+    if isinstance(column, pa.ExtensionArray):
+        column = column.storage
     if pa.types.is_dictionary(column.type):
         column = pc.cast(column, column.type.value_type)
+    if pa.types.is_timestamp(column.type) and column.type.tz:  # as text it would need the zone's own rules
+        column = column.cast(pa.timestamp(column.type.unit, "UTC"))
     if pa.types.is_nested(column.type):
         raise CatalogueError(f"{file.name}: the column {quoted(name)} holds lists or structures, not one value a row")
+    for is_view, plain in ((pa.types.is_string_view, pa.string()), (pa.types.is_binary_view, pa.binary())):
+        if is_view(column.type):  # which Arrow cannot filter
+            column = pc.cast(column, plain)
     if pa.types.is_string(column.type) or pa.types.is_large_string(column.type):
         column = _text_or_bytes(column)
     mask = f"{name}.mask"
-    if mask in batch.schema.names:
+    if mask in batch.schema.names and pa.types.is_boolean(batch.column(mask).type):
         column = pc.if_else(pc.fill_null(batch.column(mask), False), None, column)
     return column
 

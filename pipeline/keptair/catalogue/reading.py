@@ -84,7 +84,8 @@ def open_catalogue(
     """
     wanted = ColumnMap.read(column_map)
     if not fetching.is_elsewhere(str(source)):
-        return _opened(Path(source), str(source), wanted)
+        said = str(source).encode("utf-8", errors="replace").decode("utf-8")  # a file's name may be any bytes
+        return _opened(Path(source), said, wanted)
     with fetching.temporary_folder() as folder:
         path = fetching.fetch(str(source), folder)
         catalogue = _opened(path, fetching.without_secrets(str(source)), wanted)

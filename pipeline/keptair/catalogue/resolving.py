@@ -9,13 +9,14 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from keptair.catalogue.cells import missing_words
-from keptair.catalogue.columns import KINDS, ColumnEntry, ColumnMap, Reference, close_to, kinds_from
+from keptair.catalogue.columns import KINDS, MOST_NAMES, ColumnEntry, ColumnMap, Reference, close_to, kinds_from
 from keptair.catalogue.showing import listed, quoted
 from keptair.catalogue.table import RawTable
 from keptair.catalogue.units import Conversion, UnitError, conversion, error_conversion
 from keptair.tables import schema
 
 AS_IT_IS = Conversion()
+MOST_REMARKS = 20  # about columns that are not read
 
 
 @dataclass(frozen=True)
@@ -134,8 +135,8 @@ class _Resolver:
             for position in self._positions(name, "from", entry.sources)
         )
         of_value = values[0].conversion if values else self._stated(name, entry)
-        kind = self._position(name, "kind", entry.kind, shared=True)
-        numbers = tuple(float(word) for word in entry.missing if not isinstance(word, str))
+        kind = self._position(name, "kind", entry.kind, shared=True) if name in KINDS else None
+        numbers = tuple(_as_float(word) for word in entry.missing if not isinstance(word, str))
         words = [word for word in entry.missing if isinstance(word, str)]
         return NumberPlan(
             name,
@@ -162,7 +163,8 @@ class _Resolver:
         entry = self._entry(name)
         positions = tuple(self._positions(name, "from", entry.sources))
         words = [str(word) for word in entry.missing]
-        return TextPlan(name, positions, entry.words, entry.date, missing | missing_words(words) if words else missing)
+        date = entry.date if name == "updated" else ""
+        return TextPlan(name, positions, entry.words, date, missing | missing_words(words) if words else missing)
 
     def _entry(self, name: str) -> ColumnEntry:
         """The map's entry; columns of the file that have the canonical names themselves stand in for what it lacks."""
@@ -268,7 +270,7 @@ class _Resolver:
         carried: dict[str, int] = {}
         wanted = [name for name in self.map.file.carry if name != "*"]
         if "*" in self.map.file.carry:
-            wanted += [name for name in self.table.names if name not in wanted]
+            wanted = list(dict.fromkeys([*wanted, *self.table.names]))
         for name in wanted:
             position = self._find(name, "file", "carry")
             if position is not None:
@@ -285,7 +287,18 @@ class _Resolver:
         canonical = [name for name in schema.catalogue().names if name not in self.table.names]
         used = set(self.serves) | {position for position, name in enumerate(self.table.names) if name in read}
         known = set(schema.catalogue().names)
-        for position, name in enumerate(self.table.names):
+        remarks = []
+        for position, name in enumerate(self.table.names[:MOST_NAMES]):
             near = "" if position in used or name in known else close_to(name, canonical, likeness=0.9)
             if near and near.split("_err_")[0].removesuffix("_bound") not in self.map.columns:
-                self.remarks.append(f"the column {quoted(name)} is not read; {near} was meant?")
+                remarks.append(f"the column {quoted(name)} is not read; {near} was meant?")
+        self.remarks += remarks[:MOST_REMARKS]
+        if len(remarks) > MOST_REMARKS:
+            self.remarks.append(f"{len(remarks) - MOST_REMARKS} more columns are not read whose names nearly fit")
+
+
+def _as_float(number: float) -> float:
+    try:
+        return float(number)
+    except OverflowError:  # cells that large are read as infinite, too
+        return math.inf if number > 0 else -math.inf

@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-import unicodedata
-
-_HIDDEN = {"Cc", "Cf", "Cs", "Co", "Cn", "Zl", "Zp"}  # control, format and bidirectional marks, line separators
+from keptair.errors import visible
 
 
 def shown(text: str, longest: int = 60) -> str:
@@ -12,7 +10,7 @@ def shown(text: str, longest: int = 60) -> str:
     if len(text) > longest:
         half = (longest - 1) // 2
         text = f"{text[:half]}…{text[-half:]}"
-    return "".join(_written_out(letter) if unicodedata.category(letter) in _HIDDEN else letter for letter in text)
+    return visible(text)
 
 
 def quoted(text: str, longest: int = 60) -> str:
@@ -24,7 +22,3 @@ def listed(texts: list[str], most: int = 8) -> str:
     """Some of the texts between quotes, and how many more there are."""
     some = ", ".join(quoted(text) for text in texts[:most])
     return f"{some} and {len(texts) - most} more" if len(texts) > most else some
-
-
-def _written_out(letter: str) -> str:
-    return letter.encode("unicode_escape").decode("ascii")

@@ -5,6 +5,7 @@ from __future__ import annotations
 import codecs
 import io
 import tempfile
+import threading
 import zlib
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -16,6 +17,7 @@ CHUNK = 1 << 20
 LONGEST_LINE = 64 << 20  # bytes; a longer one is no row of a table, and would have to be held in memory whole
 INFLATION_LIMIT = 200  # inflated bytes for each one on disk; tables reach 20, a gzip bomb 1000
 INFLATION_FLOOR = 100 << 20  # below this size nobody is hurt, whatever the ratio
+MOMENT = 0.2  # seconds for Arrow to see that a file has ended
 GZIP_MARK = b"\x1f\x8b"
 
 
@@ -184,25 +186,39 @@ class TableText:
 
 
 class Readable(io.RawIOBase):
-    """An iterator of bytes as a file that can be read once."""
+    """An iterator of bytes as a file that can be read once.
+
+    Arrow reads ahead in a thread of its own and never waits for it. If that thread is still in here when Python ends,
+    Python aborts or hangs: whoever stops reading says so with `stop`.
+    """
 
     def __init__(self, pieces: Iterator[bytes]) -> None:
         self._pieces = pieces
         self._buffer = memoryview(b"")
+        self._at_work = threading.Lock()
+        self._ended = threading.Event()
 
     def readable(self) -> bool:
         return True
 
     def readinto(self, buffer: memoryview) -> int:  # type: ignore[override]
-        while not self._buffer:
-            piece = next(self._pieces, None)
-            if piece is None:
-                return 0
-            self._buffer = memoryview(piece)
-        size = min(len(buffer), len(self._buffer))
-        buffer[:size] = self._buffer[:size]
-        self._buffer = self._buffer[size:]
-        return size
+        with self._at_work:
+            while not self._buffer:
+                piece = next(self._pieces, None)
+                if piece is None:
+                    self._ended.set()
+                    return 0
+                self._buffer = memoryview(piece)
+            size = min(len(buffer), len(self._buffer))
+            buffer[:size] = self._buffer[:size]
+            self._buffer = self._buffer[size:]
+            return size
+
+    def stop(self) -> None:
+        """The file ends here; back when nobody reads in it."""
+        with self._at_work:
+            self._pieces, self._buffer = iter(()), memoryview(b"")
+        self._ended.wait(MOMENT)
 
 
 def _chained(first: bytes, rest: Iterator[bytes]) -> Iterator[bytes]:

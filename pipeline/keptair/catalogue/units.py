@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from dataclasses import dataclass
 from functools import cache
@@ -58,7 +59,8 @@ NAMES = {
     "magnitude": "a magnitude",
     "number": "a plain number",
 }
-LOGARITHM = re.compile(r"^(?:dex|log|log10|lg)\s*\(\s*(?P<of>.*?)\s*\)$|^\[(?P<within>.+)\]$", re.IGNORECASE)
+LOGARITHM = re.compile(r"^(?:dex|log|log10|lg)\s*\((?P<of>.*)\)$|^\[(?P<within>.+)\]$", re.IGNORECASE)
+LONGEST = 100  # characters
 SOLAR_CONSTANT = "1361 W m-2"  # IAU 2015 Resolution B3, nominal total solar irradiance
 
 
@@ -75,23 +77,25 @@ class Conversion:
     logarithmic: bool = False
 
     def values(self, written: Floats) -> Floats:
-        if self.logarithmic:
-            with np.errstate(over="ignore"):
+        with np.errstate(over="ignore"):
+            if self.logarithmic:
                 return np.power(10.0, written) * self.factor
-        return written * self.factor + self.offset
+            return written * self.factor + self.offset
 
     def error(self, written: Floats, values: Floats, side: int) -> Floats:
         """The size of an error on the upper (+1) or lower (-1) side of the converted values."""
         size = np.abs(written)
-        if self.logarithmic:
-            with np.errstate(over="ignore", invalid="ignore"):
+        with np.errstate(over="ignore", invalid="ignore"):
+            if self.logarithmic:
                 return np.abs(values * (np.power(10.0, side * size) - 1.0))
-        return size * abs(self.factor)
+            return size * self.factor
 
 
 def conversion(unit: str, column: str) -> Conversion:
     """From a unit as written to the canonical unit of a column; UnitError where that cannot be."""
     written = unit.strip()
+    if len(written) > LONGEST:
+        raise UnitError("too long for a unit")
     logarithm = LOGARITHM.match(written)
     if logarithm:
         inner = conversion(logarithm["of"] or logarithm["within"] or "", column)
@@ -153,7 +157,10 @@ def _conversion(written: str, column: str) -> Conversion:
         if unit == units.deg_C and wanted == "temperature":
             return Conversion(1.0, 273.15)
         if unit.is_equivalent(target):
-            return Conversion(float(f"{unit.to(target):.15g}"))  # 15, not 14.999999999999998
+            factor = float(f"{unit.to(target):.15g}")  # 15, not 14.999999999999998
+            if not 0 < factor < math.inf:
+                raise ArithmeticError
+            return Conversion(factor)
         raise UnitError(f"{_dimension_name(unit)}, but {NAMES[wanted]} is needed")
     except (ArithmeticError, units.UnitScaleError):
         raise UnitError("no such unit can be reckoned with: its scale is no number") from None

@@ -11,11 +11,12 @@ from typing import Any
 import numpy as np
 
 from keptair.catalogue.showing import quoted, shown
-from keptair.catalogue.streams import inflated_copy
+from keptair.catalogue.streams import INFLATION_FLOOR, INFLATION_LIMIT, inflated_copy
 from keptair.catalogue.table import Block, RawTable
 from keptair.errors import CatalogueError
 
 ROWS = 1 << 16  # in one block
+MOST_FIELDS = 999  # FITS standard 4.0, section 7.3.1
 
 
 def open_fits(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every format is opened alike
@@ -27,6 +28,8 @@ def open_fits(path: Path, comment: str) -> RawTable:  # noqa: ARG001 - every for
         # a file of our own: astropy leaves its own open where it fails
         with plain.open("rb") as file, fits.open(file, memmap=False) as extensions:
             tables = [part for part in extensions if isinstance(part, fits.BinTableHDU | fits.TableHDU)]
+            if tables:
+                _check_size(tables[0].header, path, plain.stat().st_size)
             if not tables:
                 raise CatalogueError(f"{path.name}: the FITS file holds no table, only images")
             table = Table.read(tables[0], format="fits", unit_parse_strict="silent")
@@ -79,9 +82,39 @@ def _open_ascii(path: Path, kind: str, astropy_format: str) -> RawTable:
     with inflated_copy(path) as plain, reading(kind, path):
         from astropy.table import Table
 
+        _check_lines(path, plain)
         table = Table.read(str(plain), format=astropy_format)
         units = [str(table[name].unit or "") for name in table.colnames]
     return in_memory(kind, path, table.colnames, units, _columns(table), [])
+
+
+def _check_size(header: Any, path: Path, size: int) -> None:
+    """astropy makes room for as many rows as the header says, and looks only then how many there are."""
+    width, rows, heap = header["NAXIS1"], header["NAXIS2"], header.get("PCOUNT", 0)
+    said = width * rows + heap
+    if min(width, rows, heap) < 0 or said > size:
+        raise CatalogueError(f"{path.name}: says it has {said} bytes of rows; the whole file has {size}")
+    if header.get("TFIELDS", 0) > MOST_FIELDS:
+        raise CatalogueError(f"{path.name}: says it has {header['TFIELDS']} columns; FITS knows {MOST_FIELDS}")
+
+
+def _check_lines(path: Path, plain: Path) -> None:
+    """astropy keeps every cell as wide as the widest of its column."""
+    count, longest = 0, 0
+    with plain.open("rb") as file:
+        for line in file:
+            count, longest = count + 1, max(longest, len(line))
+    check_room(path, plain, 4 * count * longest)
+
+
+def check_room(path: Path, plain: Path, needed: int) -> None:
+    """Refuses a table that would take far more memory than its file has bytes."""
+    limit = max(INFLATION_FLOOR, INFLATION_LIMIT * plain.stat().st_size)
+    if needed > limit:
+        raise CatalogueError(
+            f"{path.name}: would take {needed / 1e6:.0f} MB of memory, more than {INFLATION_LIMIT} times its size",
+            hint="save it as CSV or Parquet if it is what you think it is",
+        )
 
 
 def _columns(table: Any) -> list[Any]:

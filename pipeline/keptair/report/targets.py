@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 import io
 import json
 import unicodedata
@@ -13,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from keptair.errors import NotThereError, UsageError
 from keptair.report import words
+from keptair.tables.sheets import Sheet
 
 if TYPE_CHECKING:
     import pyarrow as pa
@@ -80,10 +80,10 @@ def _check(verdicts: Sequence[str], top: int | None, sort: str) -> None:
 def as_csv(table: pa.Table) -> str:
     """Comma-separated text; the column names carry the units. Text cells no spreadsheet takes for a formula."""
     written = io.StringIO()
-    writer = csv.writer(written, lineterminator="\n")
-    writer.writerow(table.column_names)
+    sheet = Sheet(written)
+    sheet.write(table.column_names)
     for row in _rows(table):
-        writer.writerow(_harmless(cell) if isinstance(cell, str) else cell for cell in row.values())
+        sheet.write(row.values())
     return written.getvalue()
 
 
@@ -110,10 +110,6 @@ def as_votable(table: pa.Table) -> str:
     cells = ["".join(f"<TD>{'' if cell is None else escape(str(cell))}</TD>" for cell in row) for row in rows]
     data = "".join(f"<TR>{line}</TR>\n" for line in cells)
     return f"{head}<DATA><TABLEDATA>\n{data}</TABLEDATA></DATA></TABLE>{tail}\n"
-
-
-def _harmless(cell: str) -> str:
-    return "'" + cell if cell.startswith(("=", "+", "-", "@")) else cell
 
 
 def _rows(table: pa.Table) -> list[dict[str, Any]]:

@@ -2,26 +2,21 @@
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Iterator, Mapping
 from contextlib import ExitStack, contextmanager, suppress
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import IO, TYPE_CHECKING, Any, Literal
+from typing import IO, Literal
 
 import numpy as np
 
-from keptair.batches import Columns, Finished
+from keptair.batches import Finished
 from keptair.runs.publish import writing
 from keptair.settings import Settings
 from keptair.tables import schema
 from keptair.tables.parquet import Writer
 from keptair.tables.schema import Column, Table
-
-if TYPE_CHECKING:
-    from _csv import Writer as CsvWriter
-
-FORMULA_STARTS = ("=", "+", "-", "@")  # what a spreadsheet would take for a formula
+from keptair.tables.sheets import Sheet
 
 
 def tables(settings: Settings, carried: Mapping[str, Literal["number", "text"]]) -> dict[str, Table]:
@@ -47,7 +42,7 @@ class Output:
     planets: Writer
     gases: Writer
     rejects: Writer
-    rejects_csv: CsvWriter
+    rejects_csv: Sheet
 
     def write(self, finished: Finished) -> None:
         with writing(self.part.parent):
@@ -56,7 +51,9 @@ class Output:
             if finished.gases:
                 self.gases.write(finished.gases)
             self.rejects.write(finished.rejects)
-            self.rejects_csv.writerows(_harmless_rows(finished.rejects, self.rejects.table))
+            columns = [np.asarray(finished.rejects[name]).tolist() for name in self.rejects.table.names]
+            for row in zip(*columns, strict=True):
+                self.rejects_csv.write(row)
 
 
 @contextmanager
@@ -66,8 +63,8 @@ def opened(part: Path, described: Mapping[str, Table]) -> Iterator[Output]:
         with writing(part.parent):
             stream = (part / "rejects.csv").open("w", encoding="utf-8", newline="")
             at_the_end.callback(_let_go, stream)
-            sheet = csv.writer(stream, lineterminator="\n")
-            sheet.writerow(described["rejects"].names)
+            sheet = Sheet(stream)
+            sheet.write(described["rejects"].names)
             writers = {}
             for name, table in described.items():
                 writers[name] = Writer(part / f"{name}.parquet", table)
@@ -82,10 +79,3 @@ def opened(part: Path, described: Mapping[str, Table]) -> Iterator[Output]:
 def _let_go(stream: IO[str]) -> None:
     with suppress(OSError):  # what it could not write is no news: that error is on its way
         stream.close()
-
-
-def _harmless_rows(columns: Columns, table: Table) -> Iterator[tuple[Any, ...]]:
-    """Rows for a spreadsheet: no cell that it would run as a formula."""
-    cells = [np.asarray(columns[name]).tolist() for name in table.names]
-    for row in zip(*cells, strict=True):
-        yield tuple("'" + cell if isinstance(cell, str) and cell.startswith(FORMULA_STARTS) else cell for cell in row)

@@ -43,7 +43,8 @@ def _votable_unit(column: Column) -> str:
     """The unit in the VOTable's spelling; empty where it has none, as for the Earth's and Jupiter's radius and mass."""
     from astropy.units import Unit
 
-    if not column.unit:
+    # named here, since astropy takes them for VOTable units as soon as it has read a file that uses them so
+    if not column.unit or "earth" in column.unit or "jupiter" in column.unit:
         return ""
     try:
         spelling = str(Unit(column.unit).to_string("vounit"))
