@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import io
 import os
 import shutil
 import signal
@@ -39,19 +40,26 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
 def entry() -> NoReturn:
     """The console script."""
-    signal.signal(signal.SIGTERM, _terminate)
+    for name in ("SIGTERM", "SIGHUP"):  # Windows has no SIGHUP
+        if hasattr(signal, name):
+            signal.signal(getattr(signal, name), _terminate)
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")  # a terminal that cannot write ⊕ is no reason to fail
     sys.exit(main())
 
 
 class Terminated(KeyboardInterrupt):
-    """SIGTERM takes the way of Ctrl-C: no handler of ordinary errors swallows it."""
+    """SIGTERM and SIGHUP take the way of Ctrl-C: no handler of ordinary errors swallows them."""
 
-    number = signal.SIGTERM
+    def __init__(self, number: int) -> None:
+        self.number = number
+        super().__init__()
 
 
 def _terminate(number: int, _: FrameType | None) -> NoReturn:
     signal.signal(number, signal.SIG_IGN)  # once is enough: cleaning up is under way
-    raise Terminated
+    raise Terminated(number)
 
 
 def _complain(error: KeptairError) -> int:

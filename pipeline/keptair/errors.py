@@ -9,6 +9,11 @@ LONGEST_MESSAGE = 4000  # characters, about; nobody reads on
 LONGEST_LINE = 2000
 
 
+def counted(number: int, thing: str) -> str:
+    """3 problems, 1 problem."""
+    return f"{number} {thing}" if number == 1 else f"{number} {thing}s"
+
+
 def visible(text: str) -> str:
     """The text with hidden characters written out: what a stranger named cannot move the cursor."""
     return "".join(_written_out(letter) if unicodedata.category(letter) in HIDDEN else letter for letter in text)

@@ -10,7 +10,7 @@ from typing import Annotated, Any, Literal, Self
 from pydantic import AfterValidator, BaseModel, ConfigDict, Field, PrivateAttr, ValidationError, model_validator
 
 from keptair import toml_files
-from keptair.errors import SettingsError
+from keptair.errors import SettingsError, counted
 from keptair.reference import load_backgrounds, load_gases
 from keptair.reference.models import Background, Gas
 
@@ -22,7 +22,12 @@ def _in_order(ends: tuple[float, float]) -> tuple[float, float]:
 
 
 Probability = Annotated[float, Field(ge=0, le=1)]
-Range = Annotated[tuple[float, float], AfterValidator(_in_order)]
+Positive = Annotated[float, Field(gt=0)]
+Albedo = Annotated[float, Field(ge=0, le=0.99)]
+Age = Annotated[float, Field(ge=0.01, le=13.8)]  # [Gyr]
+Positives = Annotated[tuple[Positive, Positive], AfterValidator(_in_order)]
+Albedos = Annotated[tuple[Albedo, Albedo], AfterValidator(_in_order)]
+Ages = Annotated[tuple[Age, Age], AfterValidator(_in_order)]
 
 
 def number(default: Any, unit: str, meaning: str, **bounds: Any) -> Any:
@@ -84,25 +89,25 @@ class Settings(Group):
     batch_planets: int = number(128, "", "planets worked on together; never changes a number", ge=1, le=100_000)
     max_rejects: Probability = number(0.2, "", "more rows set aside than this share: latest does not move")
 
-    bond_albedo: Range = number((0.0, 0.5), "", "uniform prior of a missing Bond albedo")
-    age_prior_gyr: Range = number((1.0, 10.0), "Gyr", "uniform prior of a missing age")
+    bond_albedo: Albedos = number((0.0, 0.5), "", "uniform prior of a missing Bond albedo")
+    age_prior_gyr: Ages = number((1.0, 10.0), "Gyr", "uniform prior of a missing age")
     redistribution: float = number(0.25, "", "1/4 full, 1/2 day side, 2/3 bare rock, 1 substellar", gt=0, le=1)
     emissivity: float = number(1.0, "", "infrared emissivity", gt=0, le=1)
     insolation_tolerance: float = number(0.15, "", "flag where two insolations differ by more (and by 2 sigma)", gt=0)
 
     reference_pressure_pa: float = number(1e5, "Pa", "pressure at the catalogue radius", gt=1, le=1e9)
     homopause_pressure_pa: float = number(0.1, "Pa", "pressure up to which the air is well mixed", gt=1e-4, le=10)
-    damping_exponent: Range = number((0.7, 1.2), "", "exponent s of the conductive scaling, uniform")
+    damping_exponent: Positives = number((0.7, 1.2), "", "exponent s of the conductive scaling, uniform")
     conduction_limit_k: float = number(1e4, "K", "hottest exobase; beyond it conduction cannot carry the heat", ge=500)
     excess_heat: Literal["outflow", "radiate"] = number("outflow", "", "what becomes of heat beyond that limit")
     frost_pressure_pa: float = number(10.0, "Pa", "a gas below this saturation pressure is frozen out", gt=0)
     exobase_radius_cap: float = number(30.0, "", "air reaching beyond this many planet radii is not bound", gt=1)
 
-    jeans_factor: Range = number((0.5, 1.7), "", "correction of the Jeans flux, log-uniform")
+    jeans_factor: Positives = number((0.5, 1.7), "", "correction of the Jeans flux, log-uniform")
     outflow_jeans_parameter: float = number(2.5, "", "the background flows out below this Jeans parameter", gt=0)
     roche_factor_floor: float = number(0.02, "", "smallest tidal factor of the energy limit", gt=0, le=1)
     trace_mixing_ratio: float = number(1e-6, "", "homopause mixing ratio fluxes of traces are given for", gt=0, le=1)
-    start_gyr: Range = number((0.1, 0.5), "Gyr", "when outgassing overtakes early loss, log-uniform")
+    start_gyr: Ages = number((0.1, 0.5), "Gyr", "when outgassing overtakes early loss, log-uniform")
 
     verdict: Verdict = Field(Verdict(), description="where probability becomes a verdict")
     xuv: HighEnergyLight = Field(HighEnergyLight(), description="the star's high-energy light")
@@ -168,7 +173,7 @@ class Settings(Group):
             settings = cls.model_validate(values)
         except ValidationError as error:
             raise SettingsError(
-                f"{path or 'settings'}: the settings cannot be used ({error.error_count()} problems)",
+                f"{path or 'settings'}: the settings cannot be used ({counted(error.error_count(), 'problem')})",
                 [_sentence(problem) for problem in error.errors()],
                 "keptair settings",
             ) from None

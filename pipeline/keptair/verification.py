@@ -10,7 +10,7 @@ from typing import Annotated, Any, Literal
 from pydantic import Field, ValidationError
 
 from keptair import toml_files
-from keptair.errors import SettingsError
+from keptair.errors import SettingsError, counted
 from keptair.physics.constants import EARTH_MASS, EARTH_RADIUS, GRAVITATION
 from keptair.records import from_records
 from keptair.reference import read_toml
@@ -101,11 +101,11 @@ def with_solar_activity(settings: Settings, overrides: Mapping[str, Any]) -> Set
     """The reference data's settings for the Sun, except where the user set the same."""
     values = settings.model_dump()
     for name in flat_names(overrides):
-        if settings.origin(name) == "default":
-            *groups, last = name.split(".")
-            place, given = values, overrides
-            for group in groups:
-                place, given = place[group], given[group]
+        *groups, last = name.split(".")
+        place, given, model = values, overrides, settings
+        for group in groups:
+            place, given, model = place[group], given[group], getattr(model, group)
+        if last not in model.model_fields_set:
             place[last] = given[last]
     return Settings.model_validate(values)
 
@@ -120,5 +120,5 @@ def _bodies(entries: Mapping[str, Any], where: str) -> dict[str, Body]:
                 f"[bodies.{key}] {'.'.join(map(str, one['loc']))}: {one['msg'].lower()}" for one in error.errors()
             ]
     if problems:
-        raise SettingsError(f"{where}: bodies that cannot be used ({len(problems)} problems)", problems)
+        raise SettingsError(f"{where}: bodies that cannot be used ({counted(len(problems), 'problem')})", problems)
     return bodies

@@ -185,6 +185,11 @@ def test_values_out_of_the_range_of_floats_make_no_noise(unit: str, tmp_path: Pa
     assert refusal(Case("a.csv", data, with_columns(stellar_teff_k=entry)), tmp_path) == ""
 
 
+def test_a_unit_out_of_fashion_makes_no_noise(tmp_path: Path) -> None:
+    case = Case("a.csv", CSV, with_columns(stellar_teff_k={"from": "x", "unit": "G"}))
+    assert "a temperature is needed" in refusal(case, tmp_path)
+
+
 def test_a_unit_of_no_size_is_none() -> None:
     with pytest.raises(UnitError):
         conversion("0 K", "stellar_teff_k")

@@ -11,7 +11,7 @@ import pytest
 from handmade import make_batch
 from keptair.batch import Batch
 from keptair.settings import Settings
-from keptair.stages import fill
+from keptair.stages import fill, irradiate
 
 EARTH_MASS, EARTH_RADIUS = 3.986004e14 / 6.67430e-11, 6.3781e6  # IAU 2015 Resolution B3
 JUPITER_IN_EARTHS = 1.2668653e17 / 3.986004e14
@@ -34,7 +34,8 @@ def sources(batch: Batch, name: str) -> list[str]:
 
 
 def raised(batch: Batch, flag: str) -> list[bool]:
-    return batch.columns[f"flag.{flag}"].tolist()
+    """A flag of fill, or one that waits until the flux is settled."""
+    return irradiate.run(batch, Settings()).columns[f"flag.{flag}"].tolist()
 
 
 def test_a_value_is_marked_by_whether_it_has_an_error() -> None:

@@ -108,7 +108,9 @@ def test_without_flux_or_star_or_bulk_a_row_is_unassessed_and_never_dark() -> No
     )
     assert column(batch, "is.assessed") == [True, False, False, False, False]
     assert np.isnan(batch.columns["insolation_earth"][1:3]).all()
-    assert np.isnan(batch.columns["equilibrium_temperature_k"][1:]).all()
+    temperature = batch.columns["equilibrium_temperature_k"]
+    assert np.isnan(temperature[1:3]).all()
+    assert (temperature[3:] > 200).all()  # how hot it is needs no mass
     assert np.isnan(batch.columns["xuv_flux_earth"][1:]).all()
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+import warnings
 from dataclasses import dataclass
 from functools import cache
 from typing import Any
@@ -187,8 +188,10 @@ def _understood(written: str) -> Any:
 
     for style in (None, "cds", "vounit"):
         try:
-            found = units.Unit(written, format=style, parse_strict="raise")
-        except (ValueError, TypeError, units.UnitsWarning):
+            with warnings.catch_warnings():
+                warnings.simplefilter("ignore")  # that a spelling is out of fashion
+                found = units.Unit(written, format=style, parse_strict="raise")
+        except (ValueError, TypeError):
             continue
         if isinstance(found, units.UnitBase) and not isinstance(found, units.UnrecognizedUnit):
             return found

@@ -122,7 +122,7 @@ def silicate_radius(planet_mass: Numbers) -> Numbers:
     return EARTH_RADIUS * np.minimum(growing, LARGEST_ROCK)
 
 
-def hydrogen_share(planet_mass: Numbers, planet_radius: Numbers, mean_flux: Numbers, age: Numbers) -> Numbers:
+def hydrogen_share(planet_mass: Numbers, planet_radius: Numbers, flux: Numbers, age: Numbers) -> Numbers:
     """Share of the mass in a hydrogen envelope that a radius asks for.
 
     R_env = R − 1.00 R⊕ (M/M⊕)^(1/3.7) = 2.06 R⊕ (M/M⊕)^−0.21 (f/5 %)^0.59 (S/S⊕)^0.044 (t/5 Gyr)^−0.18, solved for f
@@ -131,7 +131,7 @@ def hydrogen_share(planet_mass: Numbers, planet_radius: Numbers, mean_flux: Numb
     ----------
     planet_mass : array [kg]
     planet_radius : array [m]
-    mean_flux : array [1]
+    flux : array [1]
         In solar constants.
     age : array [Gyr]
 
@@ -154,5 +154,5 @@ def hydrogen_share(planet_mass: Numbers, planet_radius: Numbers, mean_flux: Numb
     """
     mass = planet_mass / EARTH_MASS
     envelope = np.maximum(planet_radius / EARTH_RADIUS - mass ** (1 / 3.7), 0.0)
-    unit = 2.06 * mass**-0.21 * mean_flux**0.044 * (age / 5.0) ** -0.18
+    unit = 2.06 * mass**-0.21 * flux**0.044 * (age / 5.0) ** -0.18
     return 0.05 * (envelope / unit) ** (1 / 0.59)

@@ -132,7 +132,7 @@ def exobase_pressure(gravity: Numbers, particle_mass: float, cross_section: floa
 
     Examples
     --------
-    μ = 16 u, 9.8 m s⁻² and 2e-19 m² give 1.3e-6 Pa (US Standard Atmosphere 1976 at 450-500 km: 5e-7 to 1e-6 Pa):
+    μ = 16 u, 9.8 m s⁻² and 2e-19 m² (worked by hand; the US Standard Atmosphere 1976 has it near 410 km):
 
     >>> f"{exobase_pressure(9.8, 16 * 1.66053907e-27, 2e-19):.1e}"
     '1.3e-06'
@@ -254,8 +254,8 @@ def exobase_density(
 
     Examples
     --------
-    The Earth at 500 km and 1000 K has some 5e13 to 1e14 m⁻³ (US Standard Atmosphere 1976: 3e13 in all at 500 km,
-    where the mean mass is 14 u):
+    The Earth at 500 km and 1000 K with 14 u and 2e-19 m²: 7e13 m⁻³ (the US Standard Atmosphere 1976 has 2.2e13 there,
+    with a larger cross-section):
 
     >>> bool(4e13 < exobase_density(5.97217e24, 6.871e6, 1000.0, 14 * 1.66053907e-27, 2e-19) < 1e14)
     True

@@ -111,8 +111,8 @@ def mass_from_luminosity(star_luminosity: Numbers) -> Numbers:
 
     Notes
     -----
-    Common practice; dwarfs only. Within 0.84–1.04 of the mean dwarf sequence of Pecaut & Mamajek 2013,
-    doi:10.1088/0067-0049/208/1/9, down to M8; then too light (0.67 at L0).
+    Common practice; dwarfs only. Within 0.83–1.05 of the mean dwarf sequence of Pecaut & Mamajek 2013,
+    doi:10.1088/0067-0049/208/1/9, from A5 to M8; too light below (0.69 at M9.5).
 
     Examples
     --------
@@ -130,7 +130,7 @@ def equilibrium_temperature(
 ) -> Numbers:
     """Temperature at which a planet radiates what it absorbs.
 
-    T = [⟨S⟩ · 1361 W m⁻² · (1 − A) · f / (ε σ)]^¼
+    T = [⟨S⟩ · 1361 W m⁻² · (1 − A) · f / (e_IR σ)]^¼
 
     Parameters
     ----------
@@ -141,6 +141,7 @@ def equilibrium_temperature(
     redistribution : float [1]
         f: 1/4 over the whole sphere, 1/2 over the day side, 2/3 a bare rock's day side, 1 the substellar point.
     emissivity : float [1]
+        e_IR.
 
     Returns
     -------
@@ -152,8 +153,8 @@ def equilibrium_temperature(
 
     Examples
     --------
-    Mercury, A = 0.088, from the orbit-mean flux of its 0.387 au and e = 0.2056 (439.5 K, Mallama 2017,
-    arXiv:1703.02670, albedo):
+    Mercury with the albedo of Mallama 2017, arXiv:1703.02670 (0.088), from the orbit-mean flux of its 0.387 au and
+    e = 0.2056: 439.5 K, worked by hand (his orbit mean of the temperature is 436.3 K):
 
     >>> round(float(equilibrium_temperature(1 / 0.387098**2 / (1 - 0.20563**2) ** 0.5, 0.088)), 1)
     439.5

@@ -76,7 +76,7 @@ def chen_kipping_mass(
     1.0
     """
     radius = np.asarray(planet_radius / EARTH_RADIUS)
-    branch = np.searchsorted(RADIUS_BREAKS, radius, side="right")
+    branch = (radius >= RADIUS_BREAKS[0]).astype(int) + (radius > RADIUS_BREAKS[1])
     coefficient, slope, scatter = (np.take(column, np.minimum(branch, 1)) for column in zip(*BRANCHES, strict=True))
     single = (radius / coefficient) ** (1 / slope) * np.exp(scatter / slope * deviate)
     low, high = DEGENERATE_MASSES

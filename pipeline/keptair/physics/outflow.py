@@ -77,8 +77,8 @@ def energy_limited_flux(
 
     Examples
     --------
-    A hot Neptune like GJ 436 b (21 M⊕, 4.1 R⊕, about 1 W m⁻² of XUV) loses 1e8–1e9 g/s at 10 % (Ehrenreich et al.
-    2015, doi:10.1038/nature14501):
+    A hot Neptune like GJ 436 b (21 M⊕, 4.1 R⊕, about 1 W m⁻² of XUV) loses 1e8–1e9 g/s (Ehrenreich et al. 2015,
+    doi:10.1038/nature14501); at 10 % the limit is 1.3e9, within 1 dex:
 
     >>> flux = energy_limited_flux(1.3e26, 2.6e7, 1.3 * 2.6e7, 0.8, 1.0, 0.1)
     >>> bool(1e8 < flux * 4 * np.pi * 2.6e7**2 * 1e3 < 1e10)

@@ -42,7 +42,7 @@ def decisive(batch: Batch, envelope: Array, kept: Array) -> dict[str, Array]:
         return {"decisive_input": names, "decisive_share": shares, "model_share": model}
     result = result[rows]
     candidates = {name: given(batch, name)[rows, 1:] for name in INPUTS}
-    candidates[XUV_LEVEL] = batch.draws["xuv_deviate"][rows, 1:]
+    candidates[XUV_LEVEL] = xuv_level(batch)[rows, 1:]
     grid = np.stack([np.nan_to_num(first_order_share(result, values), nan=-1.0) for values in candidates.values()])
     best, largest = np.argmax(grid, axis=0), np.max(grid, axis=0)
     found = largest >= SMALLEST_SHARE
@@ -52,6 +52,12 @@ def decisive(batch: Batch, envelope: Array, kept: Array) -> dict[str, Array]:
         np.maximum(np.nan_to_num(first_order_share(result, batch.draws[name][rows, 1:])), 0.0) for name in MODEL
     )
     return {"decisive_input": names, "decisive_share": shares, "model_share": model}
+
+
+def xuv_level(batch: Batch) -> Array:
+    """How bright the star is in X-rays against the law, or, where they were measured, against that measurement."""
+    measured = np.nan_to_num(batch.draws["xuv_measured"], nan=1.0)
+    return np.log10(batch.draws["xuv_level"]) + np.log10(measured)
 
 
 def given(batch: Batch, name: str) -> Array:

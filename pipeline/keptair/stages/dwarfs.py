@@ -19,6 +19,12 @@ def mean_dwarf(column: str, temperature: Array) -> Array:
     return np.interp(temperature, sequence["teff_k"], sequence[column], left=np.nan, right=np.nan)
 
 
+def last_dwarf(column: str, temperature: Array) -> Array:
+    """The same for draws of a star that is on the sequence: one past its end takes the last dwarf."""
+    sequence = load_main_sequence()["teff_k"]
+    return mean_dwarf(column, np.clip(temperature, sequence[0], sequence[-1]))
+
+
 def fill_radius(values: dict[str, Array], sources: dict[str, Array]) -> Array:
     """Fill a missing stellar radius: from luminosity and temperature, else from the mean dwarf; say where it was that.
 
@@ -34,10 +40,7 @@ def fill_radius(values: dict[str, Array], sources: dict[str, Array]) -> Array:
     central = temperature[:, 0]
     unlike = departs(values["stellar_mass_msun"][:, 0], mean_dwarf("mass_msun", central))
     stands_in = gap & ~lit & ~np.isnan(mean_dwarf("radius_rsun", central)) & ~unlike
-    # a draw past the end of the sequence takes the last dwarf
-    sequence = load_main_sequence()["teff_k"]
-    inside = np.clip(temperature[stands_in], sequence[0], sequence[-1])
-    radius[stands_in] = mean_dwarf("radius_rsun", inside)
+    radius[stands_in] = last_dwarf("radius_rsun", temperature[stands_in])
     sources["stellar_radius_rsun"][stands_in] = "relation"
     return stands_in
 
@@ -45,13 +48,14 @@ def fill_radius(values: dict[str, Array], sources: dict[str, Array]) -> Array:
 def magnitudes(batch: Batch, values: dict[str, Array], sources: dict[str, Array]) -> tuple[dict[str, Array], Array]:
     """Apparent J and K, a missing one from the mean dwarf at the system's distance; and where that was so."""
     temperature, radius = values["stellar_teff_k"][:, 0], values["stellar_radius_rsun"][:, 0]
-    distance = batch.columns["catalogue.distance_pc"]
+    distance = np.where(sources["distance_pc"] == "", np.nan, batch.columns["catalogue.distance_pc"])
     dwarf = ~np.isnan(radius) & ~departs(radius, mean_dwarf("radius_rsun", temperature))
     filled, stood_in = {}, np.zeros(len(batch), dtype=bool)
     for name, column in MAGNITUDES.items():
         apparent = mean_dwarf(column, temperature) + 5 * np.log10(distance / 10)
         gap = (sources[name] == "") & dwarf & ~np.isnan(apparent)
-        filled[name] = np.where(gap, apparent, batch.columns[f"catalogue.{name}"])
+        catalogued = np.where(sources[name] == "", np.nan, batch.columns[f"catalogue.{name}"])
+        filled[name] = np.where(gap, apparent, catalogued)
         sources[name][gap] = "relation"
         stood_in |= gap
     return filled, stood_in

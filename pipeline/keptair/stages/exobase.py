@@ -57,7 +57,12 @@ def frozen_gases(batch: Batch, settings: Settings) -> dict[str, Array]:
 def choose(batch: Batch, settings: Settings, frozen: dict[str, Array]) -> dict[str, Array]:
     """The secondary background (the row's own, else CO2, else nitrogen where CO2 freezes) and the published one.
 
-    worked.<key>: rows the background is worked out for; listed.<key>: rows it has lines in gases for.
+    h2 for envelopes and where the catalogue says so; else the row's own; else co2; else, where CO2 is frozen, n2_icy
+
+    Notes
+    -----
+    Of the columns that stay inside, worked.<key> holds the rows the background is worked out for, listed.<key> those it
+    has lines in gases for.
     """
     assessed, own = batch.columns["is.assessed"], batch.columns["catalogue.background"]
     cold = frozen[settings.backgrounds[TEMPERATE].main_gas]
@@ -120,6 +125,6 @@ def published(batch: Batch, settings: Settings) -> dict[str, Array]:
         "exobase_escape_speed_km_s": draws.median(speed) / 1e3,
         "flag.beyond_conduction": assessed & (draws.share(conductive > settings.conduction_limit_k) >= 0.5),
         "flag.unbound": assessed & (draws.share(~np.isnan(radius)) < 0.5),
-        "flag.no_hydrogen_asked": hydrogen & sized & (share <= 0),
+        "flag.no_hydrogen_asked": hydrogen & sized & (share < settings.backgrounds[HYDROGEN].inventory_floor),
         "flag.hydrogen_share_extrapolated": hydrogen & sized & (share > 0.20),
     }

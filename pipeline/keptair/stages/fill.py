@@ -46,6 +46,9 @@ LIMIT_IS_MISSING = frozenset(
         "stellar_teff_k",
         "stellar_radius_rsun",
         "stellar_mass_msun",
+        "j_mag",
+        "k_mag",
+        "distance_pc",
     }
 )
 DRAW_BOUNDS = {"eccentricity": (0.0, 0.95), "stellar_age_gyr": (0.01, 13.8)}  # others: the schema's
@@ -60,18 +63,14 @@ def run(batch: Batch, settings: Settings) -> Batch:
     """Draw every input, then fill what the catalogue lacks."""
     sampler = Sampler(batch.columns["planet_id"], batch.columns["host_id"], settings.draws, settings.seed)
     values, sources = read_inputs(batch, sampler)
-    flags = {
-        "flag.value_without_error": np.any([sources[name] == "measured_no_error" for name in DRAWN], axis=0),
-        "flag.one_sided_error": np.any([one_sided(batch, name) for name in DRAWN], axis=0),
-        "flag.limit_used": np.any([sources[name] == "limit" for name in DRAWN], axis=0),
-        "flag.age_from_prior": sources["stellar_age_gyr"] == "",
-    }
+    marks = error_marks(batch, sources)
+    flags = {"flag.age_from_prior": sources["stellar_age_gyr"] == ""}
     fill_priors(values, sources, sampler, settings)
     mean_dwarf = dwarfs.fill_radius(values, sources)
     magnitudes, mean_magnitude = dwarfs.magnitudes(batch, values, sources)
     flags["flag.main_sequence_fallback"] = mean_dwarf | mean_magnitude
     sized = np.isin(sources["planet_radius_rearth"], ("measured", "measured_no_error", "given"))
-    transiting = sized | (batch.columns["transits"] == "yes")
+    transiting = (sized & (batch.columns["transits"] != "no")) | (batch.columns["transits"] == "yes")
     incline(values, sources, transiting, sampler)
     weighed = np.isin(sources["planet_mass_mearth"], ("measured", "measured_no_error", "given")) | (
         (sources["planet_mass_mearth"] == "minimum") & transiting
@@ -84,6 +83,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
     columns = {
         **published(batch, values, sources, magnitudes),
         **{name: flag & assessed_bulk if name == "flag.substellar" else flag for name, flag in flags.items()},
+        **marks,
         "is.weighed": weighed,
         "is.sized": sized,
         "is.mean_dwarf": mean_dwarf,
@@ -127,10 +127,11 @@ def read_inputs(batch: Batch, sampler: Sampler) -> tuple[dict[str, Array], dict[
         drawn = draws.measured(value, np.nan_to_num(plus), np.nan_to_num(minus), bounds, sampler(name))
         upper, lower = (source == "limit") & (bound == "upper"), (source == "limit") & (bound == "lower")
         if upper.any():
-            drawn[upper] = draws.between(bounds[0], value[upper, None], sampler(name)[upper])
+            end = np.clip(value[upper, None], *bounds)
+            drawn[upper] = draws.between(bounds[0], end, sampler(name)[upper])
         if lower.any():
-            start = np.maximum(value[lower, None], 1e-300)
-            end = np.maximum(np.minimum(LIMIT_REACH * start, bounds[1]), start)
+            start = np.maximum(np.clip(value[lower, None], *bounds), 1e-300)
+            end = np.minimum(LIMIT_REACH * start, bounds[1])
             drawn[lower] = draws.log_between(start, end, sampler(name)[lower])
         drawn[~present] = np.nan
         values[name] = drawn
@@ -144,12 +145,25 @@ def draw_bounds(name: str) -> tuple[float, float]:
     return DRAW_BOUNDS.get(name, (low if low is not None else -np.inf, high if high is not None else np.inf))
 
 
-def one_sided(batch: Batch, name: str) -> Array:
-    """Rows whose value has an error on one side only."""
-    plus, minus = np.isnan(batch.columns[f"{name}_err_plus"]), np.isnan(batch.columns[f"{name}_err_minus"])
-    has_value = ~np.isnan(batch.columns[f"catalogue.{name}"]) & (batch.columns[f"{name}_bound"] == "")
-    one: Array = has_value & (plus != minus)
-    return one
+def error_marks(batch: Batch, sources: dict[str, Array]) -> dict[str, Array]:
+    """Where a used value has no error, an error on one side only, or is a limit.
+
+    Insolation stands apart: whether the catalogue's is used is settled where the flux is worked out.
+    """
+    marks: dict[str, Array] = {}
+    for which, names in (
+        ("all", [name for name in DRAWN if name != "insolation_earth"]),
+        ("flux", ["insolation_earth"]),
+    ):
+        bare, one_sided, limit = (np.zeros(len(batch), dtype=bool) for _ in range(3))
+        for name in names:
+            plus, minus = np.isnan(batch.columns[f"{name}_err_plus"]), np.isnan(batch.columns[f"{name}_err_minus"])
+            stands = np.isin(sources[name], ("measured", "measured_no_error", "minimum"))
+            bare |= stands & plus & minus
+            one_sided |= stands & (plus != minus)
+            limit |= sources[name] == "limit"
+        marks |= {f"bare.{which}": bare, f"one_sided.{which}": one_sided, f"limit.{which}": limit}
+    return marks
 
 
 def fill_priors(values: dict[str, Array], sources: dict[str, Array], sampler: Sampler, settings: Settings) -> None:
@@ -231,7 +245,8 @@ def published(
         if name in SETTLED_LATER:
             continue
         as_it_stands = np.isin(sources[name], ("measured", "measured_no_error", "given"))
-        drawn = draws.median(values[name]) if name in DRAWN else magnitudes.get(name, catalogued)
+        usable = np.where(sources[name] == "", np.nan, catalogued)
+        drawn = draws.median(values[name]) if name in DRAWN else magnitudes.get(name, usable)
         columns[name] = np.where(as_it_stands, catalogued, drawn)
         columns[f"{name}_source"] = sources[name]
     return columns

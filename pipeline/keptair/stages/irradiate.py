@@ -9,7 +9,7 @@ from keptair.batch import Array, Batch
 from keptair.physics import bulk, irradiation, orbit
 from keptair.physics.constants import ASTRONOMICAL_UNIT, SOLAR_LUMINOSITY, SOLAR_MASS, SOLAR_RADIUS
 from keptair.settings import Settings
-from keptair.stages.dwarfs import mean_dwarf
+from keptair.stages.dwarfs import last_dwarf
 from keptair.stages.starlight import activity_draws, xuv_at
 
 HYDROGEN_SHARES = (0.001, 0.90)  # the hydrogen share is kept within these
@@ -49,7 +49,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
         **settled("stellar_mass_msun", star_mass / SOLAR_MASS, star_mass_source, batch),
         **settled("semi_major_axis_au", axis / ASTRONOMICAL_UNIT, axis_source, batch),
         **settled("insolation_earth", flux, flux_source, batch),
-        **with_range("equilibrium_temperature_k", equilibrium, assessed),
+        **with_range("equilibrium_temperature_k", equilibrium, ~np.isnan(flux[:, 0])),
         **with_range("xuv_flux_earth", lit.draws["xuv_now"], assessed),
         "equilibrium_temperature_black_k": draws.median(black),
         "surface_gravity_m_s2": draws.median(lit.draws["gravity"]),
@@ -57,6 +57,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
         "escape_speed_km_s": draws.median(bulk.escape_speed(mass, radius)) / 1e3,
         "missing_inputs": missing_inputs(batch, light_source, star_mass_source, axis_source, flux_source),
         "is.assessed": assessed,
+        **error_flags(batch, flux_source),
         "flag.insolation_disagrees": disagrees,
         "flag.no_orbit": assessed & np.isnan(axis[:, 0]),
         "flag.xuv_extrapolated": assessed & far_from_dwarfs(batch),
@@ -72,8 +73,8 @@ def star_luminosity(batch: Batch) -> tuple[Array, Array]:
 
 def stellar_mass(batch: Batch, light: Array) -> tuple[Array, Array]:
     """The catalogue's mass, else that of a dwarf of this luminosity; a mean dwarf keeps its own."""
-    mean = SOLAR_MASS * mean_dwarf("mass_msun", batch.draws["input.stellar_teff_k"])
-    stands_in = batch.columns["is.mean_dwarf"][:, None] & ~np.isnan(mean)
+    mean = SOLAR_MASS * last_dwarf("mass_msun", batch.draws["input.stellar_teff_k"])
+    stands_in = batch.columns["is.mean_dwarf"][:, None]
     worked_out = np.where(stands_in, mean, irradiation.mass_from_luminosity(light))
     return first_known(batch, "stellar_mass_msun", worked_out, "relation")
 
@@ -108,6 +109,14 @@ def insolation(batch: Batch, light: Array, axis: Array, settings: Settings) -> t
     return np.where(known[:, None], worked_out, catalogued), source, disagrees
 
 
+def error_flags(batch: Batch, flux_source: Array) -> dict[str, Array]:
+    """Flags of values without error, with an error on one side, or limits; of flux only where it is used."""
+    used = (flux_source != "") & (flux_source != "computed")
+    names = {"value_without_error": "bare", "one_sided_error": "one_sided", "limit_used": "limit"}
+    columns = batch.columns
+    return {f"flag.{flag}": columns[f"{mark}.all"] | (columns[f"{mark}.flux"] & used) for flag, mark in names.items()}
+
+
 def far_from_dwarfs(batch: Batch) -> Array:
     """Stars the activity law was not made for: giants, and the very hot or cool."""
     radius = draws.median(batch.draws["input.stellar_radius_rsun"])
@@ -140,6 +149,7 @@ def missing_inputs(batch: Batch, light: Array, star_mass: Array, axis: Array, fl
 
     no_flux_path = (light == "") | (axis == "")
     flux_from_catalogue = no_flux_path & (flux != "")
+    mean_dwarf = columns["is.mean_dwarf"]
     wanted = {
         "planet_radius_rearth": lacks("planet_radius_rearth"),
         "planet_mass_mearth": lacks("planet_mass_mearth"),
@@ -149,9 +159,9 @@ def missing_inputs(batch: Batch, light: Array, star_mass: Array, axis: Array, fl
         "insolation_earth": flux == "",
         "bond_albedo": lacks("bond_albedo"),
         "stellar_teff_k": (light == "") & lacks("stellar_teff_k") & ~flux_from_catalogue,
-        "stellar_radius_rsun": (light == "") & lacks("stellar_radius_rsun") & ~flux_from_catalogue,
+        "stellar_radius_rsun": (((light == "") & lacks("stellar_radius_rsun")) | mean_dwarf) & ~flux_from_catalogue,
         "stellar_mass_msun": (star_mass == "") | (star_mass == "relation"),
-        "stellar_luminosity_lsun": (light == "") & ~flux_from_catalogue,
+        "stellar_luminosity_lsun": ((light == "") | (mean_dwarf & (light == "computed"))) & ~flux_from_catalogue,
         "stellar_age_gyr": lacks("stellar_age_gyr"),
     }
     names = np.full(len(batch), "", dtype=object)

@@ -37,7 +37,9 @@ def run(batch: Batch, settings: Settings) -> Batch:  # noqa: ARG001  (every stag
         priority=spectroscopy.priority(radius, batch.columns["air_probability"], tsm),
         **{
             "flag.no_transit_radius": ~seen,
-            "flag.tsm_extrapolated": ~np.isnan(tsm) & (radius > LARGEST_RADIUS * EARTH_RADIUS),
+            "flag.tsm_extrapolated": batch.columns["is.assessed"]
+            & ~np.isnan(tsm)
+            & (radius > LARGEST_RADIUS * EARTH_RADIUS),
         },
     )
     mask, names = flags.pack(batch.flagged(flag.name for flag in schema.flags()))

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -70,10 +69,10 @@ def page() -> str:
     """The whole dictionary as Markdown."""
     parts = [HEAD]
     for name in schema.TABLES:
-        table = schema.table(name)
+        table = _with_templates(name)
         parts.append(f"## {name}\n\n{table.description}\n")
         parts.append("| column | type | unit | UCD | meaning |\n|---|---|---|---|---|")
-        parts[-1] += "".join("\n" + _row(column) for column in _distinct(table)) + "\n"
+        parts[-1] += "".join("\n" + _row(column) for column in table) + "\n"
     parts.append("## Flags\n\nBits of `planets.flags`; `flag_names` says them in words.\n")
     parts.append("| bit | name | raised by | meaning |\n|---|---|---|---|")
     parts[-1] += "".join(f"\n| {one.bit} | `{one.name}` | {one.stage} | {one.description} |" for one in schema.flags())
@@ -82,23 +81,14 @@ def page() -> str:
     return "\n".join(parts).rstrip() + "\n"
 
 
-def _distinct(table: schema.Table) -> Iterator[schema.Column]:
-    """The columns with those of a template shown once."""
-    seen = set()
-    for column in table:
-        if column.template and "{gas}" in column.template:
-            if column.template in seen:
-                continue
-            seen.add(column.template)
-        yield column
+def _with_templates(name: schema.TableName) -> schema.Table:
+    """A table with what stands for every gas shown once."""
+    return schema.table(name, {"{gas}": "the gas"})
 
 
 def _row(column: schema.Column) -> str:
-    name, description = column.name, column.description
-    if "{gas}" in column.template:
-        name = column.template
     unit = column.unit or ("1" if column.type == "number" else "")
-    return f"| `{name}` | {column.type} | {unit} | {column.ucd} | {description.replace('|', '/')} |"
+    return f"| `{column.name}` | {column.type} | {unit} | {column.ucd} | {column.description.replace('|', '/')} |"
 
 
 @dataclass(frozen=True)
@@ -115,14 +105,13 @@ def formulas() -> list[Behind]:
     found: dict[str, Behind] = {}
     names: tuple[schema.TableName, ...] = ("planets", "gases")
     for name in names:
-        for column in _distinct(schema.table(name)):
+        for column in _with_templates(name):
             if not column.derived_by:
                 continue
             known = found.get(column.derived_by, Behind(formula(column.derived_by), (), ()))
-            shown = column.template if "{gas}" in column.template else column.name
             sources = (column.source,) if column.source and column.source not in known.sources else ()
             found[column.derived_by] = Behind(
-                known.told, (*known.columns, f"{name}.{shown}"), (*known.sources, *sources)
+                known.told, (*known.columns, f"{name}.{column.name}"), (*known.sources, *sources)
             )
     return list(found.values())
 

@@ -43,7 +43,7 @@ def of_function(function: Callable[..., Any]) -> Formula:
     sections = dict(zip(rest[::2], rest[1::2], strict=True))
     summary, _, equation = head.strip().partition("\n\n")
     return Formula(
-        f"{function.__module__}.{function.__name__}",
+        f"{function.__module__}.{function.__qualname__}",
         _one_line(summary),
         _one_line(equation),
         {name: unit for name, unit in _units(sections.get("Parameters", "")) if name},

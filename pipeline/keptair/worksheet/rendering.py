@@ -91,7 +91,7 @@ def _number(value: float | str | None) -> str:
         return "-"
     if isinstance(value, str):
         return value
-    return f"{value:.4g}"
+    return "<1e-99" if 0 < abs(value) < 1e-99 else f"{value:.4g}"
 
 
 def _cell(text: str) -> str:

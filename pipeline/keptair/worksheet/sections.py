@@ -298,7 +298,11 @@ def gases(batch: Batch, follower: Follower) -> Section:
     )
     mixing = follower.settings.trace_mixing_ratio
     heads = ("gas", "λ", "q", "φ_J m-2 s-1", "φ_D m-2 s-1", "kg s-1", "τ Gyr", "P", "limit")
-    return Section(f"Traces under {key} (medians; fluxes at a mixing ratio of {mixing:g})", steps, heads, tuple(rows))
+    title = f"Traces under {key} (medians; fluxes at a mixing ratio of {mixing:g})"
+    legend = (
+        "λ: Jeans parameter, q: speed ratio, φ_J: Jeans flux, φ_D: supply, kg s-1: loss, τ: escape time, P: retention"
+    )
+    return Section(title, (*steps, Step("", "", None, origin=legend)), heads, tuple(rows))
 
 
 def verdict(batch: Batch) -> Section:
