@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import copy
 import re
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from datetime import datetime
 from difflib import get_close_matches
 from pathlib import Path
@@ -80,28 +81,45 @@ class ColumnMap(_Part):
     constants: dict[str, Word] = {}
 
     _lines: dict[tuple[str, ...], int] = PrivateAttr(default_factory=dict)
+    _misshapen: list[str] = PrivateAttr(default_factory=list)
 
     @classmethod
-    def read(cls, source: str | Path | Mapping[str, Any] | ColumnMap | None) -> ColumnMap:
-        """From a TOML file, a dictionary of the same shape, or nothing."""
+    def read(
+        cls, source: str | Path | Mapping[str, Any] | ColumnMap | None, *, with_mistakes: bool = False
+    ) -> ColumnMap:
+        """From a TOML file, a dictionary of the same shape, or nothing.
+
+        with_mistakes : keys of the wrong shape are left out and told by `mistakes`, together with all the others,
+            instead of being an error of their own
+        """
         if isinstance(source, ColumnMap):
             return source
         if source is None:
             return cls()
         if isinstance(source, Mapping):
-            return cls._checked(source, "the column map", {})
+            return cls._checked(source, "the column map", {}, with_mistakes)
         path = Path(source)
         values, text = toml_files.read(path, ColumnMapError, "the column map")
-        return cls._checked(values, path.name, _lines_of(text))
+        return cls._checked(values, path.name, _lines_of(text), with_mistakes)
 
     @classmethod
-    def _checked(cls, values: Mapping[str, Any], name: str, lines: dict[tuple[str, ...], int]) -> ColumnMap:
+    def _checked(
+        cls, values: Mapping[str, Any], name: str, lines: dict[tuple[str, ...], int], with_mistakes: bool
+    ) -> ColumnMap:
+        problems: list[str] = []
         try:
             column_map = cls.model_validate(values)
         except ValidationError as error:
             problems = [_sentence(problem, lines) for problem in error.errors()]
-            raise ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair map CATALOGUE") from None
+            refused = ColumnMapError(f"{name}: {cannot_be_used(problems)}", problems, "keptair map CATALOGUE")
+            if not with_mistakes:
+                raise refused from None
+            try:
+                column_map = cls.model_validate(_without(values, [problem["loc"] for problem in error.errors()]))
+            except ValidationError:
+                raise refused from None
         column_map._lines = lines
+        column_map._misshapen = problems
         return column_map
 
     def as_dict(self) -> dict[str, Any]:
@@ -114,7 +132,7 @@ class ColumnMap(_Part):
 
     def mistakes(self) -> list[str]:
         """Everything wrong that can be seen without the file."""
-        problems: list[str] = []
+        problems = list(self._misshapen)
         known = {column.name: column for column in schema.inputs()}
         for name, entry in self.columns.items():
             if name in known:
@@ -228,6 +246,19 @@ def _sentence(problem: Any, lines: Mapping[tuple[str, ...], int]) -> str:
         return f"{where}: no such key; {near + ' was meant?' if near else 'possible are ' + ', '.join(known)}"
     message = problem["msg"].removeprefix("Value error, ").removeprefix("Input ")
     return f"{where} = {_written(problem['input'])}: {message}"
+
+
+def _without(values: Mapping[str, Any], places: Iterable[tuple[int | str, ...]]) -> dict[str, Any]:
+    """The map without the keys at these places."""
+    kept = copy.deepcopy(dict(values))
+    for place in places:
+        *groups, last = [str(key) for key in place if not _is_union_branch(key)] or [""]
+        inner: Any = kept
+        for group in groups:
+            inner = inner.get(group) if isinstance(inner, dict) else None
+        if isinstance(inner, dict):
+            inner.pop(last, None)
+    return kept
 
 
 def _is_union_branch(key: object) -> bool:

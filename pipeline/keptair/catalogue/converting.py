@@ -77,10 +77,10 @@ def read_number(block: Block, plan: NumberPlan, size: int) -> dict[str, Array]:
             bound = np.where(fresh, side, bound).astype(object)
     if name in strange:
         strange[name] = np.where(np.isnan(values), strange[name], "").astype(object)
-    columns: dict[str, Array] = {
+    columns: dict[str, Array] = {  # a table with one column of errors means it for both sides
         f"read.{name}": values,
-        f"read.{name}_err_plus": _error(block, plan, plan.plus, values, +1, strange),
-        f"read.{name}_err_minus": _error(block, plan, plan.minus, values, -1, strange),
+        f"read.{name}_err_plus": _error(block, plan, plan.plus or plan.minus, values, +1, strange),
+        f"read.{name}_err_minus": _error(block, plan, plan.minus or plan.plus, values, -1, strange),
         f"read.{name}_bound": np.where(np.isnan(values), "", bound).astype(object),
     }
     return columns | {f"unreadable.{part}": texts for part, texts in strange.items() if (texts != "").any()}

@@ -82,7 +82,7 @@ def open_catalogue(
 
     Everything wrong with the map is told at once. What is fetched stays as long as the catalogue is in use.
     """
-    wanted = ColumnMap.read(column_map)
+    wanted = ColumnMap.read(column_map, with_mistakes=True)
     if not fetching.is_elsewhere(str(source)):
         said = str(source).encode("utf-8", errors="replace").decode("utf-8")  # a file's name may be any bytes
         return _opened(Path(source), said, wanted)
