@@ -5,7 +5,7 @@ BIN := .venv/bin
 INSTALLED := .venv/.installed
 
 .DEFAULT_GOAL := help
-.PHONY: help demo test lint types schemas handbook verify clean
+.PHONY: help demo test lint types schemas handbook verify fuzz clean
 
 help: ## list these commands
 	@grep -hE '^[a-z]+:.*## ' $(MAKEFILE_LIST) | sed -E 's/:.*## /\t/' | expand -t 12
@@ -43,6 +43,9 @@ handbook: $(INSTALLED) ## checks against published values: source, expected, obt
 
 verify: $(INSTALLED) ## the Solar System through the default settings
 	$(BIN)/keptair verify
+
+fuzz: $(INSTALLED) ## ten minutes of hostile input against reader, column map and screen
+	PYTHONPATH=tests $(BIN)/python -m fuzz --seconds 600
 
 clean: ## remove what the commands above made
 	rm -rf .venv demo build dist .pytest_cache .mypy_cache .ruff_cache .hypothesis

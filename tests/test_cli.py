@@ -6,6 +6,7 @@ import re
 import subprocess
 import sys
 import tomllib
+from pathlib import Path
 
 import pytest
 
@@ -21,7 +22,7 @@ Boreal b,11.3,300,4.2,5900,1.1,1.05
 Cirro b,0.7,far,88,5750,1.0,1.0
 ,1,1,10,5700,1,1
 """
-COMMANDS = ("run", "check", "targets", "columns", "settings")
+COMMANDS = ("run", "check", "map", "targets", "trace", "verify", "columns", "settings")
 
 
 @pytest.fixture
@@ -274,3 +275,28 @@ def test_a_reader_that_has_seen_enough_is_no_error():
     finally:
         os.close(writer)
     assert (done.returncode, done.stderr) == (0, "")
+
+
+def test_a_damaged_run_is_one_sentence(tmp_path: Path) -> None:
+    (tmp_path / "datapackage.json").write_text("{}", encoding="utf-8")
+    (tmp_path / "planets.parquet").write_bytes(b"junk")
+    for command in (["targets", str(tmp_path)], ["trace", "Thulimar b", str(tmp_path)]):
+        done = subprocess.run([sys.executable, "-m", "keptair", *command], capture_output=True, text=True, check=False)
+        assert done.returncode == 2
+        assert "damaged" in done.stderr
+        assert "Traceback" not in done.stderr
+
+
+def test_output_that_finds_no_room_is_said_so() -> None:
+    with Path("/dev/full").open("w") as full:
+        command = [sys.executable, "-m", "keptair", "columns"]
+        done = subprocess.run(command, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert done.returncode == 6
+    assert "no room left" in done.stderr
+
+
+def test_an_argument_that_is_not_text_is_refused() -> None:
+    command = [sys.executable, "-m", "keptair", "trace", b"\xff", "."]
+    done = subprocess.run(command, capture_output=True, text=True, check=False)
+    assert done.returncode == 2
+    assert "is not text" in done.stderr

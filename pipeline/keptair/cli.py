@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import errno
 import io
 import os
 import shutil
@@ -14,7 +15,7 @@ from types import FrameType
 from typing import NoReturn
 
 from keptair import __version__
-from keptair.errors import KeptairError, OutputError, StoppedError, UsageError
+from keptair.errors import KeptairError, OutputError, StoppedError, UsageError, visible
 
 # Everything else is imported where it is used: the help has to be there at once.
 
@@ -22,7 +23,11 @@ from keptair.errors import KeptairError, OutputError, StoppedError, UsageError
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run one command; its exit code."""
     try:
-        options = _parser().parse_args(arguments)
+        given = sys.argv[1:] if arguments is None else arguments
+        odd = [argument for argument in given if not argument.isprintable() and not _is_text(argument)]
+        if odd:
+            raise UsageError(f"{odd[0]!a}: is not text", hint="a name in UTF-8")
+        options = _parser().parse_args(given)
         code: int = options.command(options)
         sys.stdout.flush()
         return code
@@ -34,6 +39,11 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return 0
     except KeptairError as error:
         return _complain(error)
+    except OSError as error:
+        if error.errno != errno.ENOSPC:
+            return _unexpected(error)
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return _complain(OutputError("standard output cannot be written (no room left)"))
     except Exception as error:
         return _unexpected(error)
 
@@ -43,10 +53,21 @@ def entry() -> NoReturn:
     for name in ("SIGTERM", "SIGHUP"):  # Windows has no SIGHUP
         if hasattr(signal, name):
             signal.signal(getattr(signal, name), _terminate)
+    for name in ("stdout", "stderr"):
+        if getattr(sys, name) is None:  # closed by whoever started us
+            setattr(sys, name, open(os.devnull, "w", encoding="utf-8"))  # noqa: PTH123, SIM115
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="backslashreplace")  # a terminal that cannot write ⊕ is no reason to fail
     sys.exit(main())
+
+
+def _is_text(argument: str) -> bool:
+    try:
+        argument.encode()
+    except UnicodeEncodeError:
+        return False
+    return True
 
 
 class Terminated(KeyboardInterrupt):
@@ -72,7 +93,7 @@ def _unexpected(error: Exception) -> int:
     _show_traceback()
     where = "".join(f" ({note})" for note in getattr(error, "__notes__", []))
     print(
-        f"keptair: something unexpected went wrong{where}: {type(error).__name__}: {error}\n"
+        f"keptair: something unexpected went wrong{where}: {type(error).__name__}: {visible(str(error))}\n"
         "This should not happen; please report it. KEPTAIR_DEBUG=1 shows where it came from.",
         file=sys.stderr,
     )
@@ -123,9 +144,10 @@ def _check(options: argparse.Namespace) -> int:
 
 def _targets(options: argparse.Namespace) -> int:
     from keptair.report import targets
-    from keptair.runs.loading import find
+    from keptair.runs.loading import find, whole
 
-    found = targets.select(find(options.run), options.verdict, options.top, options.sort)
+    with whole(options.run):
+        found = targets.select(find(options.run), options.verdict, options.top, options.sort)
     if options.format == "table":
         sys.stdout.write(targets.as_text(found, shutil.get_terminal_size().columns))
     else:
@@ -143,10 +165,12 @@ def _map(options: argparse.Namespace) -> int:
 
 
 def _trace(options: argparse.Namespace) -> int:
+    from keptair.runs.loading import whole
     from keptair.worksheet import rendering, worked_sheet
 
     shown = {"text": rendering.as_text, "markdown": rendering.as_markdown, "json": rendering.as_json}
-    sheet = worked_sheet(options.planet, options.run)
+    with whole(options.run):
+        sheet = worked_sheet(options.planet, options.run)
     print(shown["json" if options.json else options.format](sheet).rstrip("\n"))
     return 0
 

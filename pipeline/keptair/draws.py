@@ -112,7 +112,7 @@ def measured(value: Floats, plus: Floats, minus: Floats, bounds: tuple[float, fl
     """
     low, high = bounds
     value, plus, minus = value[:, None], plus[:, None], minus[:, None]
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         first = np.nan_to_num(np.where(low < value, (low - value) / minus, (low - value) / plus), nan=-np.inf)
         last = np.nan_to_num(np.where(high < value, (high - value) / minus, (high - value) / plus), nan=np.inf)
     start, end = ndtr(first), ndtr(last)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal, overload
 
@@ -33,6 +35,18 @@ def find(where: str | Path) -> Path:
             f"{where}: its latest run, {pointer['path']}, is not there any more", hint=f"ls {where}/runs"
         )
     return run
+
+
+@contextmanager
+def whole(where: str | Path) -> Iterator[None]:
+    """A run whose files somebody has damaged is said so, whatever library stumbles over them."""
+    try:
+        yield
+    except (KeyError, TypeError, ValueError, OSError) as error:
+        raise NotThereError(
+            f"{where}: the run cannot be read; a file of it is damaged ({type(error).__name__})",
+            hint="run the catalogue again",
+        ) from None
 
 
 @overload

@@ -30,6 +30,7 @@ from keptair.settings import Settings
 from keptair.tables.schema import Table
 
 Progress = Callable[[int, int], None]
+MOST_WORKERS_EACH = 4  # workers a processor: more only hold more batches in memory
 
 
 @dataclass(frozen=True)
@@ -69,13 +70,15 @@ def run(
     """
     if workers is not None and workers < 1:
         raise UsageError(f"workers = {workers}: should be 1 or more")
+    if str(out) == "":
+        raise UsageError("out: say in which folder the runs shall be", hint="--out runs")
     clock = Clock()
     chosen = settings if isinstance(settings, Settings) else Settings.read(settings)
     with clock.measure("read"):
         source = open_catalogue(catalogue, column_map)
     tables = output.tables(chosen, source.carried)
     manifest = _known_before(source, chosen)
-    at_hand = workers or batches.processors()
+    at_hand = min(workers or batches.processors(), MOST_WORKERS_EACH * batches.processors())
     with begin(Path(out), _digest(manifest)) as part:
         with nullcontext(executor) if executor else batches.threads(at_hand) as at_work:
             raw = clock.each("read", source.batches(chosen.batch_planets))

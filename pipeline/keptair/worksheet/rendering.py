@@ -6,6 +6,7 @@ import json
 import textwrap
 from dataclasses import asdict
 
+from keptair.errors import visible
 from keptair.worksheet.sheet import Section, Sheet, Step
 
 WIDTH = 80
@@ -14,7 +15,7 @@ INDENT = "        "
 
 def as_text(sheet: Sheet) -> str:
     """Plain text: central value, then the 16th, 50th and 84th percentile of the draws, then formula and source."""
-    lines = [f"{sheet.planet}", f"in {sheet.run}", ""]
+    lines = [visible(sheet.planet), f"in {visible(sheet.run)}", ""]
     lines += textwrap.wrap(
         "Central value (values as catalogued, every draw at its median), and in brackets the 16th, 50th and 84th "
         "percentile of the draws.",
@@ -32,7 +33,7 @@ def as_text(sheet: Sheet) -> str:
 
 def as_markdown(sheet: Sheet) -> str:
     """The same as Markdown, a table for each section."""
-    lines = [f"# {_cell(sheet.planet)}", "", f"In `{sheet.run}`.", ""]
+    lines = [f"# {_cell(visible(sheet.planet))}", "", f"In `{visible(sheet.run)}`.", ""]
     lines += [f"> {remark}" for remark in sheet.remarks]
     for section in sheet.sections:
         lines += ["", f"## {section.title}", ""]
