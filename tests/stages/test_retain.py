@@ -11,6 +11,7 @@ from handmade import make_batch
 from keptair.batch import Batch
 from keptair.settings import Settings
 from keptair.stages import escape, exobase, fill, irradiate, retain
+from keptair.stages.gas_rows import gas_rows
 
 EARTH = {"planet_mass_mearth": 1.0, "planet_radius_rearth": 1.0, "bond_albedo": 0.3, "eccentricity": 0.0,
          "semi_major_axis_au": 1.0, "stellar_luminosity_lsun": 1.0, "stellar_mass_msun": 1.0,
@@ -38,7 +39,7 @@ def kept() -> Batch:
 
 @pytest.fixture(scope="module")
 def lines(kept: Batch) -> dict[str, np.ndarray]:
-    return retain.gas_rows(kept, settings_of())
+    return gas_rows(kept, settings_of())
 
 
 def line(lines: dict[str, np.ndarray], planet: int, background: str, gas: str) -> dict[str, Any]:
@@ -110,8 +111,7 @@ def test_supply_is_given_for_gases_lighter_than_the_air_and_where_its_coefficien
 
 def test_fluxes_of_traces_scale_with_their_mixing_ratio_and_nothing_else_does() -> None:
     scarce, plenty = (
-        retain.gas_rows(retained(EARTH, **changed), settings_of(**changed))
-        for changed in ({}, {"trace_mixing_ratio": 1e-3})
+        gas_rows(retained(EARTH, **changed), settings_of(**changed)) for changed in ({}, {"trace_mixing_ratio": 1e-3})
     )
     traces = scarce["is_background"] == 0
     for name in ("jeans_flux_m2_s", "supply_flux_m2_s", "loss_rate_kg_s", "mixing_ratio"):
@@ -195,9 +195,9 @@ def test_hard_spheres_are_flagged_where_they_limit_a_gas_of_the_published_backgr
 def test_the_order_of_gas_rows_setting_changes_what_is_listed() -> None:
     settings = settings_of(gas_rows="chosen")
     batch = retained(EARTH, EARTH | {"background": "n2"}, gas_rows="chosen")
-    rows = retain.gas_rows(batch, settings)
+    rows = gas_rows(batch, settings)
     assert set(zip(rows["planet_id"], rows["background"], strict=True)) == {("planet 1", "co2"), ("planet 2", "n2")}
-    none = retain.gas_rows(retained(EARTH, gas_rows="none"), settings_of(gas_rows="none"))
+    none = gas_rows(retained(EARTH, gas_rows="none"), settings_of(gas_rows="none"))
     assert all(len(values) == 0 for values in none.values())
-    empty = retain.gas_rows(retained({}), settings_of())
+    empty = gas_rows(retained({}), settings_of())
     assert all(len(values) == 0 for values in empty.values())

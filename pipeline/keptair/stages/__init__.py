@@ -10,6 +10,7 @@ import numpy as np
 from keptair.batch import Array, Batch
 from keptair.settings import Settings
 from keptair.stages import escape, exobase, fill, irradiate, judge, observe, retain
+from keptair.stages.gas_rows import gas_rows
 from keptair.tables import schema
 
 STAGES = {
@@ -53,4 +54,4 @@ def assess(batch: Batch, settings: Settings) -> Assessed:
     for column in table:
         if column.derived_by and column.type == "number" and column.stage in ("exobase", "retain", "judge", "observe"):
             planets[column.name] = np.where(unassessed, np.nan, planets[column.name])
-    return Assessed(planets, retain.gas_rows(done, settings), seconds)
+    return Assessed(planets, gas_rows(done, settings), seconds)
