@@ -11,7 +11,7 @@ from pydantic import AfterValidator, BaseModel, ConfigDict, Field, PrivateAttr, 
 
 from keptair import toml_files
 from keptair.errors import SettingsError, counted
-from keptair.reference import load_backgrounds, load_gases
+from keptair.reference import load_backgrounds, load_gases, load_power_law
 from keptair.reference.models import Background, Gas
 
 
@@ -56,21 +56,32 @@ class Verdict(Group):
         return self
 
 
+_LAW = load_power_law()
+
+
 class HighEnergyLight(Group):
     """The star's X-ray and extreme-ultraviolet light."""
 
     law: Literal["saturated-power-law", "ribas-2005", "sanz-forcada-2011"] = number(
         "saturated-power-law", "", "how high-energy light fades with age"
     )
-    scatter_dex: float = number(0.4, "dex", "scatter of one star about the law, constant in time", ge=0, le=2)
-    measured_scatter_dex: float = number(0.3, "dex", "the same where X-rays were measured", ge=0, le=2)
-    saturation_log10: float = number(-3.2, "dex", "log10 of L_XUV over L_bol while saturated", ge=-6, le=-1)
-    saturation_gyr: float = number(0.066, "Gyr", "end of saturation for a star of one solar mass", gt=0, le=5)
-    saturation_mass_exponent: float = number(
-        -1.6, "", "saturation time goes as stellar mass to this power", ge=-5, le=5
+    scatter_dex: float = number(
+        _LAW.scatter_dex, "dex", "scatter of one star about the law, constant in time", ge=0, le=2
     )
-    saturation_mass_cap_msun: float = number(1.3, "solMass", "stars above this mass saturate as one of it", gt=0)
-    decline_exponent: float = number(1.23, "", "light fades as age to minus this power", gt=0, le=4)
+    measured_scatter_dex: float = number(0.3, "dex", "the same where X-rays were measured", ge=0, le=2)
+    saturation_log10: float = number(
+        _LAW.saturation_log10, "dex", "log10 of L_XUV over L_bol while saturated", ge=-6, le=-1
+    )
+    saturation_gyr: float = number(
+        _LAW.saturation_gyr, "Gyr", "end of saturation for a star of one solar mass", gt=0, le=5
+    )
+    saturation_mass_exponent: float = number(
+        _LAW.saturation_mass_exponent, "", "saturation time goes as stellar mass to this power", ge=-5, le=5
+    )
+    saturation_mass_cap_msun: float = number(
+        _LAW.saturation_mass_cap_msun, "solMass", "stars above this mass saturate as one of it", gt=0
+    )
+    decline_exponent: float = number(_LAW.decline_exponent, "", "light fades as age to minus this power", gt=0, le=4)
 
 
 class Settings(Group):

@@ -13,10 +13,12 @@ from handmade import make_batch, solar_system
 from keptair import stages
 from keptair.physics import bulk, mass_radius, shoreline, spectroscopy
 from keptair.physics.constants import EARTH_MASS, EARTH_RADIUS, SOLAR_LUMINOSITY, SOLAR_RADIUS
+from keptair.reference import load_chen_kipping
 from keptair.settings import Settings
 
 CHEN = "Chen & Kipping 2017, doi:10.3847/1538-4357/834/1/17"
 CHEN_BY_HAND = f"{CHEN}: C M^S with its published coefficients (value from memory), by hand"
+CHEN = load_chen_kipping()
 OTEGI = "Otegi et al. 2020, doi:10.1051/0004-6361/201936482"
 ZAHNLE = "Zahnle & Catling 2017, doi:10.3847/1538-4357/aa7846"
 KEMPTON = "Kempton et al. 2018, doi:10.1088/1538-3873/aadf6f"
@@ -74,15 +76,25 @@ METRICS = (  # planet, column, published, source; the papers' own masses, radii,
 
 
 def forecast(mass_in_earths: float) -> float:
-    return float(mass_radius.chen_kipping_radius(mass_in_earths * EARTH_MASS)) / EARTH_RADIUS
+    return (
+        float(mass_radius.chen_kipping_radius(mass_in_earths * EARTH_MASS, CHEN.branches, CHEN.mass_breaks_mearth))
+        / EARTH_RADIUS
+    )
 
 
 def weighed(radius_in_earths: float) -> float:
-    return float(mass_radius.chen_kipping_mass(radius_in_earths * EARTH_RADIUS)) / EARTH_MASS
+    return (
+        float(
+            mass_radius.chen_kipping_mass(
+                radius_in_earths * EARTH_RADIUS, CHEN.branches, CHEN.radius_breaks_rearth, CHEN.degenerate_masses_mearth
+            )
+        )
+        / EARTH_MASS
+    )
 
 
 def otegi(radius_in_earths: float) -> float:
-    return float(mass_radius.otegi_mass(radius_in_earths * EARTH_RADIUS)) / EARTH_MASS
+    return float(mass_radius.otegi_mass(radius_in_earths * EARTH_RADIUS, (0.90, 3.45), (1.74, 1.58), 1.8)) / EARTH_MASS
 
 
 def hydrogen_share(name: str) -> float:
@@ -157,7 +169,7 @@ CHECKS = [
         "Rock ends and Neptunes begin at two Earth masses",
         f"{CHEN}, abstract: 2.0 (+0.7 −0.6) Earth masses",
         (1.4, 2.7),
-        lambda: mass_radius.MASS_BREAKS[0],
+        lambda: CHEN.mass_breaks_mearth[0],
         "Earth masses",
     ),
     *(
@@ -169,7 +181,7 @@ CHECKS = [
             "Earth radii",
             relative=5e-3,
         )
-        for mass in mass_radius.MASS_BREAKS
+        for mass in CHEN.mass_breaks_mearth
     ),
     Check(
         "Chen & Kipping weigh Venus by its radius",

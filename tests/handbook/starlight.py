@@ -18,7 +18,9 @@ from keptair.physics.constants import (
     SOLAR_MASS,
     SOLAR_RADIUS,
 )
+from keptair.reference import load_bands
 from keptair.settings import Settings
+from keptair.stages.starlight import with_extreme_ultraviolet
 
 HEAT_BALANCE = "PDS Atmospheres Node, Heat Balance table (S0 = 1370 W m-2)"
 FACT_SHEET = "NASA planetary fact sheets (value from memory)"
@@ -248,7 +250,7 @@ CHECKS = [
         "The five bands of the solar-type stars add up to the Sun's own flux",
         f"{RIBAS_SUN}: 4.64 erg cm-2 s-1 at 4.56 Gyr",
         4.64,
-        lambda: 1e3 * SOLAR_CONSTANT * activity.ribas_xuv_share(4.56),
+        lambda: 1e3 * SOLAR_CONSTANT * activity.ribas_xuv_share(4.56, load_bands().bands),
         "erg cm-2 s-1",
         relative=0.01,
     ),
@@ -257,7 +259,7 @@ CHECKS = [
         "X-rays 10^27.35 erg/s, Judge et al. 2003, doi:10.1086/376405 (value from memory); 4.58 mW m-2 of 5-105 nm at "
         "F10.7 = 140, EUVAC, Richards et al. 1994, doi:10.1029/94JA00518",
         4.58e-3,
-        lambda: activity.extreme_ultraviolet(10**20.35) / (4 * np.pi * ASTRONOMICAL_UNIT**2),
+        lambda: (with_extreme_ultraviolet(10**20.35) - 10**20.35) / (4 * np.pi * ASTRONOMICAL_UNIT**2),
         "W m-2",
         factor=2.0,
     ),

@@ -71,7 +71,7 @@ def power_law_xuv_share(
     return 10.0**saturated_log10 * np.maximum(age / saturation, 1.0) ** -decline
 
 
-def ribas_xuv_share(age: Numbers) -> Numbers:
+def ribas_xuv_share(age: Numbers, bands: tuple[tuple[float, float], ...], constant_below: float = 0.1) -> Numbers:
     """Share of a solar-type star's light in five bands of high-energy light, added up.
 
     F(1 au) = 2.40 τ^−1.92 + 4.45 τ^−1.27 + 13.5 τ^−1.20 + 4.56 τ^−1.00 + 2.53 τ^−0.85 erg cm⁻² s⁻¹, over 1361 W m⁻²
@@ -79,7 +79,10 @@ def ribas_xuv_share(age: Numbers) -> Numbers:
     Parameters
     ----------
     age : array [Gyr]
-        τ; constant below 0.1.
+        τ.
+    bands : array [1]
+        Flux at 1 au and 1 Gyr in erg cm⁻² s⁻¹, and exponent of τ, of each band.
+    constant_below : float [Gyr]
 
     Returns
     -------
@@ -93,16 +96,16 @@ def ribas_xuv_share(age: Numbers) -> Numbers:
     --------
     The Sun of 4.56 Gyr at 1 au, in erg cm⁻² s⁻¹; the paper's sum over the bands is 4.64, met to 1 %:
 
-    >>> round(float(ribas_xuv_share(4.56)) * 1361e3, 2)
+    >>> bands = ((2.40, -1.92), (4.45, -1.27), (13.5, -1.20), (4.56, -1.00), (2.53, -0.85))
+    >>> round(float(ribas_xuv_share(4.56, bands)) * 1361e3, 2)
     4.66
     """
-    bands = ((2.40, -1.92), (4.45, -1.27), (13.5, -1.20), (4.56, -1.00), (2.53, -0.85))
-    tau = np.maximum(age, 0.1)
+    tau = np.maximum(age, constant_below)
     total: Numbers = np.add.reduce([flux * tau**slope for flux, slope in bands])
     return total * 1e-3 / SOLAR_CONSTANT
 
 
-def extreme_ultraviolet(x_ray: Numbers) -> Numbers:
+def extreme_ultraviolet(x_ray: Numbers, intercept: float, slope: float) -> Numbers:
     """Extreme-ultraviolet luminosity that goes with an X-ray luminosity.
 
     log L_EUV = 4.80 + 0.860 log L_X, in erg/s
@@ -111,6 +114,8 @@ def extreme_ultraviolet(x_ray: Numbers) -> Numbers:
     ----------
     x_ray : array [W]
         0.1–2.4 keV.
+    intercept : float [dex]
+    slope : float [1]
 
     Returns
     -------
@@ -125,22 +130,28 @@ def extreme_ultraviolet(x_ray: Numbers) -> Numbers:
     --------
     The quiet Sun, L_X = 2e27 erg/s, has some 1e28 erg/s (by the relation: 10^28.28):
 
-    >>> round(float(np.log10(extreme_ultraviolet(2e20))) + 7, 2)
+    >>> round(float(np.log10(extreme_ultraviolet(2e20, 4.80, 0.860))) + 7, 2)
     28.28
     """
-    return 10 ** (4.80 + 0.860 * np.log10(x_ray * 1e7)) / 1e7
+    return 10 ** (intercept + slope * np.log10(x_ray * 1e7)) / 1e7
 
 
-def sanz_forcada_luminosity(age: Numbers, star_luminosity: Numbers) -> Numbers:
-    """High-energy luminosity of a dwarf of given age: X-rays and the extreme ultraviolet that goes with them.
+def xray_luminosity(
+    age: Numbers, star_luminosity: Numbers, saturated_share: float, at_one_gyr: float, decline: float
+) -> Numbers:
+    """X-ray luminosity of a dwarf of given age.
 
-    L_X = min(6.3e-4 L, 1.89e28 erg/s τ^−1.55), plus L_EUV of `extreme_ultraviolet`
+    L_X = min(6.3e-4 L, 1.89e28 erg/s τ^−1.55)
 
     Parameters
     ----------
     age : array [Gyr]
         τ.
     star_luminosity : array [W]
+    saturated_share : float [1]
+    at_one_gyr : float [W]
+    decline : float [1]
+        Exponent of τ.
 
     Returns
     -------
@@ -148,17 +159,17 @@ def sanz_forcada_luminosity(age: Numbers, star_luminosity: Numbers) -> Numbers:
 
     Notes
     -----
-    Sanz-Forcada et al. 2011, doi:10.1051/0004-6361/201116594 (value from memory).
+    Sanz-Forcada et al. 2011, doi:10.1051/0004-6361/201116594 (value from memory); `extreme_ultraviolet` adds what goes
+    with it.
 
     Examples
     --------
-    At 1 Gyr a Sun has L_X = 1.89e28 and L_EUV = 10^29.12 erg/s by the relations, 10^29.18 together:
+    At 1 Gyr a Sun has L_X = 1.89e28 erg/s (by the relation):
 
-    >>> round(float(np.log10(sanz_forcada_luminosity(1.0, 3.828e26))) + 7, 2)
-    29.18
+    >>> f"{xray_luminosity(1.0, 3.828e26, 6.3e-4, 1.89e21, -1.55) * 1e7:.2e}"
+    '1.89e+28'
     """
-    x_ray = np.minimum(6.3e-4 * star_luminosity, 1.89e21 * np.asarray(age) ** -1.55)
-    return x_ray + extreme_ultraviolet(x_ray)
+    return np.minimum(saturated_share * star_luminosity, at_one_gyr * np.asarray(age) ** decline)
 
 
 def traced_back_luminosity(

@@ -7,7 +7,17 @@ from functools import cache
 from importlib import resources
 from typing import Any
 
-from keptair.reference.models import Background, DiffusionPair, Gas
+from keptair.reference.models import (
+    Background,
+    Bands,
+    ChenKipping,
+    DiffusionPair,
+    ExtremeUltraviolet,
+    Gas,
+    Otegi,
+    PowerLaw,
+    XrayDecline,
+)
 
 
 @cache
@@ -50,3 +60,39 @@ def load_main_sequence() -> dict[str, tuple[float, ...]]:
     """Mean dwarf stars, coolest first: a tuple per column."""
     sequence = read_toml("main_sequence")
     return dict(zip(sequence["columns"], zip(*sequence["dwarfs"], strict=True), strict=True))
+
+
+@cache
+def load_chen_kipping() -> ChenKipping:
+    """The mass–radius relation chen-kipping-2017."""
+    return ChenKipping.model_validate(read_toml("mass_radius")["chen-kipping-2017"])
+
+
+@cache
+def load_otegi() -> Otegi:
+    """The mass–radius relation otegi-2020."""
+    return Otegi.model_validate(read_toml("mass_radius")["otegi-2020"])
+
+
+@cache
+def load_power_law() -> PowerLaw:
+    """The activity law saturated-power-law: defaults of the settings."""
+    return PowerLaw.model_validate(read_toml("activity")["saturated-power-law"])
+
+
+@cache
+def load_bands() -> Bands:
+    """The activity law ribas-2005."""
+    return Bands.model_validate(read_toml("activity")["ribas-2005"])
+
+
+@cache
+def load_xray_decline() -> XrayDecline:
+    """The activity law sanz-forcada-2011."""
+    return XrayDecline.model_validate(read_toml("activity")["sanz-forcada-2011"])
+
+
+@cache
+def load_extreme_ultraviolet() -> ExtremeUltraviolet:
+    """What goes with an X-ray luminosity."""
+    return ExtremeUltraviolet.model_validate(read_toml("activity")["extreme-ultraviolet"])

@@ -97,3 +97,63 @@ class DiffusionPair(Entry):
     coefficient_cm: Positive
     exponent: Annotated[float, Field(ge=0, le=2)]
     source: Source
+
+
+Line = tuple[float, float]
+
+
+class ChenKipping(Entry):
+    """A broken power law with scatter."""
+
+    source: Source
+    branches: tuple[tuple[Positive, float, Positive], ...]
+    mass_breaks_mearth: tuple[Positive, ...]
+    radius_breaks_rearth: tuple[Positive, ...]
+    degenerate_masses_mearth: tuple[Positive, Positive]
+
+
+class Otegi(Entry):
+    """A rocky and a volatile power law."""
+
+    source: Source
+    rocky: tuple[Positive, Positive]
+    volatile: tuple[Positive, Positive]
+    radius_break_rearth: Positive
+
+
+class PowerLaw(Entry):
+    """Saturation, then a decline: the defaults of the settings xuv.*."""
+
+    source: Source
+    saturation_log10: float
+    saturation_gyr: Positive
+    saturation_mass_exponent: float
+    saturation_mass_cap_msun: Positive
+    decline_exponent: Positive
+    scatter_dex: Positive
+    scatter_source: Source
+
+
+class Bands(Entry):
+    """Fluxes of bands, each with its own decline."""
+
+    source: Source
+    bands: tuple[Line, ...]
+    constant_below_gyr: Positive
+
+
+class XrayDecline(Entry):
+    """X-rays of a dwarf by age."""
+
+    source: Source
+    saturated_share: Positive
+    xray_at_one_gyr_w: Positive
+    decline: float
+
+
+class ExtremeUltraviolet(Entry):
+    """The extreme ultraviolet that goes with X-rays."""
+
+    source: Source
+    intercept: float
+    slope: Positive

@@ -18,6 +18,7 @@ from keptair.physics.constants import (
     SOLAR_MASS,
     SOLAR_RADIUS,
 )
+from keptair.reference import load_chen_kipping, load_otegi
 from keptair.settings import Settings
 from keptair.stages import dwarfs
 from keptair.tables import schema
@@ -194,25 +195,33 @@ def relate(
     no_mass, no_radius = sources["planet_mass_mearth"] == "", sources["planet_radius_rearth"] == ""
     deviate, uniform = sampler.normal("mass_radius_scatter"), sampler("mass_radius_scatter")
     from_radius, from_mass = no_mass & ~no_radius, no_radius & ~no_mass
+    chen, otegi = load_chen_kipping(), load_otegi()
     if from_radius.any():
         radius = values["planet_radius_rearth"][from_radius] * EARTH_RADIUS
         mass = (
-            mass_radius.otegi_mass(radius)
+            mass_radius.otegi_mass(radius, otegi.rocky, otegi.volatile, otegi.radius_break_rearth)
             if settings.mass_radius == "otegi-2020"
-            else mass_radius.chen_kipping_mass(radius, deviate[from_radius], uniform[from_radius])
+            else mass_radius.chen_kipping_mass(
+                radius,
+                chen.branches,
+                chen.radius_breaks_rearth,
+                chen.degenerate_masses_mearth,
+                deviate[from_radius],
+                uniform[from_radius],
+            )
         )
         values["planet_mass_mearth"][from_radius] = np.clip(mass / EARTH_MASS, *draw_bounds("planet_mass_mearth"))
         sources["planet_mass_mearth"][from_radius] = "relation"
     if from_mass.any():
         mass = values["planet_mass_mearth"][from_mass] * EARTH_MASS
         radius = (
-            mass_radius.otegi_radius(mass)
+            mass_radius.otegi_radius(mass, otegi.rocky, otegi.volatile, otegi.radius_break_rearth)
             if settings.mass_radius == "otegi-2020"
-            else mass_radius.chen_kipping_radius(mass, deviate[from_mass])
+            else mass_radius.chen_kipping_radius(mass, chen.branches, chen.mass_breaks_mearth, deviate[from_mass])
         )
         values["planet_radius_rearth"][from_mass] = radius / EARTH_RADIUS
         sources["planet_radius_rearth"][from_mass] = "relation"
-    large = draws.median(values["planet_radius_rearth"]) > mass_radius.RADIUS_BREAKS[1]
+    large = draws.median(values["planet_radius_rearth"]) > chen.radius_breaks_rearth[-1]
     degenerate = from_radius & large & (settings.mass_radius == "chen-kipping-2017")
     return {"flag.mass_degenerate": degenerate}
 

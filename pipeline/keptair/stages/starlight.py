@@ -6,6 +6,7 @@ import numpy as np
 
 from keptair.batch import Array, Batch
 from keptair.physics import activity
+from keptair.reference import load_bands, load_extreme_ultraviolet, load_xray_decline
 from keptair.settings import Settings
 
 
@@ -22,9 +23,15 @@ def activity_draws(batch: Batch, light: Array, star_mass: Array, settings: Setti
         "saturation_age": activity.saturation_age(
             star_mass, law.saturation_gyr, law.saturation_mass_exponent, law.saturation_mass_cap_msun
         ),
-        "xuv_measured": x_ray + activity.extreme_ultraviolet(x_ray),
+        "xuv_measured": with_extreme_ultraviolet(x_ray),
         "xuv_level": 10 ** (scatter * batch.draws["xuv_deviate"]),
     }
+
+
+def with_extreme_ultraviolet(x_ray: Array) -> Array:
+    """All the high-energy light that goes with an X-ray luminosity."""
+    relation = load_extreme_ultraviolet()
+    return x_ray + activity.extreme_ultraviolet(x_ray, relation.intercept, relation.slope)
 
 
 def xuv_at(batch: Batch, settings: Settings, age: Array) -> Array:
@@ -49,8 +56,13 @@ def law_share(batch: Batch, settings: Settings, age: Array) -> Array:
     star, law = batch.draws, settings.xuv
     coronal_share = star["coronal"] / star["bolometric"]
     if law.law == "ribas-2005":
-        return activity.ribas_xuv_share(age) * coronal_share
+        bands = load_bands()
+        return activity.ribas_xuv_share(age, bands.bands, bands.constant_below_gyr) * coronal_share
     if law.law == "sanz-forcada-2011":
-        return activity.sanz_forcada_luminosity(age, star["coronal"]) / star["bolometric"]
+        fade = load_xray_decline()
+        x_ray = activity.xray_luminosity(
+            age, star["coronal"], fade.saturated_share, fade.xray_at_one_gyr_w, fade.decline
+        )
+        return with_extreme_ultraviolet(x_ray) / star["bolometric"]
     share = activity.power_law_xuv_share(age, star["saturation_age"], law.saturation_log10, law.decline_exponent)
     return share * coronal_share

@@ -137,7 +137,7 @@ def activity_law(batch: Batch, settings: Settings) -> Callable[..., Any]:
     laws: dict[str, Callable[..., Any]] = {
         "saturated-power-law": activity.power_law_xuv_share,
         "ribas-2005": activity.ribas_xuv_share,
-        "sanz-forcada-2011": activity.sanz_forcada_luminosity,
+        "sanz-forcada-2011": activity.xray_luminosity,
     }
     return laws[settings.xuv.law]
 
