@@ -81,6 +81,10 @@ class HighEnergyLight(Group):
     saturation_mass_cap_msun: float = number(
         _LAW.saturation_mass_cap_msun, "solMass", "stars above this mass saturate as one of it", gt=0
     )
+    coronal_cap: float = number(2.0, "", "light of a corona: at most this times that of a dwarf of its mass", ge=1)
+    coronal_cap_above_msun: float = number(0.6, "solMass", "only for stars above this mass", gt=0)
+    giant_radius_rsun: float = number(2.5, "solRad", "flag xuv_extrapolated above this radius", gt=0)
+    dwarf_teff_k: Positives = number((2400.0, 6500.0), "K", "flag xuv_extrapolated outside")
     decline_exponent: float = number(_LAW.decline_exponent, "", "light fades as age to minus this power", gt=0, le=4)
 
 
@@ -103,6 +107,12 @@ class Settings(Group):
     bond_albedo: Albedos = number((0.0, 0.5), "", "uniform prior of a missing Bond albedo")
     age_prior_gyr: Ages = number((1.0, 10.0), "Gyr", "uniform prior of a missing age")
     redistribution: float = number(0.25, "", "1/4 full, 1/2 day side, 2/3 bare rock, 1 substellar", gt=0, le=1)
+    limit_reach: float = number(3.0, "", "a lower limit is drawn up to this many times itself, log-uniform", ge=1)
+    largest_cosine: float = number(
+        0.996, "", "cos i of a planet that need not transit is uniform up to this", ge=0, lt=1
+    )
+    substellar_mjup: float = number(13.0, "jupiterMass", "flag substellar above this mass", gt=0)
+    dwarf_departure: float = number(1.5, "", "a star further than this factor from its mean dwarf is none", gt=1)
     emissivity: float = number(1.0, "", "infrared emissivity", gt=0, le=1)
     insolation_tolerance: float = number(0.15, "", "flag where two insolations differ by more (and by 2 sigma)", gt=0)
 
@@ -112,6 +122,8 @@ class Settings(Group):
     conduction_limit_k: float = number(1e4, "K", "hottest exobase; beyond it conduction cannot carry the heat", ge=500)
     excess_heat: Literal["outflow", "radiate"] = number("outflow", "", "what becomes of heat beyond that limit")
     frost_pressure_pa: float = number(10.0, "Pa", "a gas below this saturation pressure is frozen out", gt=0)
+    exobase_weight: float = number(0.75, "", "share of T_exo in the mean of the upper air; the rest is T_b", ge=0, le=1)
+    largest_hydrogen_share: Probability = number(0.9, "", "largest hydrogen share a radius can ask for")
     exobase_radius_cap: float = number(30.0, "", "air reaching beyond this many planet radii is not bound", gt=1)
 
     jeans_factor: Positives = number((0.5, 1.7), "", "correction of the Jeans flux, log-uniform")

@@ -237,7 +237,7 @@ def dwarf_luminosity(star_mass: Numbers) -> Numbers:
     return SOLAR_LUMINOSITY * np.where(ratio < 0.43, 0.23 * ratio**2.3, ratio**4)
 
 
-def coronal_luminosity(star_luminosity: Numbers, star_mass: Numbers) -> Numbers:
+def coronal_luminosity(star_luminosity: Numbers, star_mass: Numbers, cap: float = 2.0, above: float = 0.6) -> Numbers:
     """Luminosity the activity laws are given: a giant's light is not its corona's.
 
     min(L, 2 L☉ (M*/M☉)⁴) for M* > 0.6 M☉, L below
@@ -246,6 +246,8 @@ def coronal_luminosity(star_luminosity: Numbers, star_mass: Numbers) -> Numbers:
     ----------
     star_luminosity : array [W]
     star_mass : array [kg]
+    cap : float [1]
+    above : float [Msun]
 
     Returns
     -------
@@ -263,8 +265,8 @@ def coronal_luminosity(star_luminosity: Numbers, star_mass: Numbers) -> Numbers:
     2.0
     """
     ratio = star_mass / SOLAR_MASS
-    dwarf = 2 * SOLAR_LUMINOSITY * np.square(np.square(ratio))
-    return np.where(ratio > 0.6, np.minimum(star_luminosity, dwarf), star_luminosity)
+    dwarf = cap * SOLAR_LUMINOSITY * np.square(np.square(ratio))
+    return np.where(ratio > above, np.minimum(star_luminosity, dwarf), star_luminosity)
 
 
 def xuv_flux(mean_flux: Numbers, xuv_share: Numbers) -> Numbers:

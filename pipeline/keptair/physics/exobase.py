@@ -150,6 +150,7 @@ def inverse_exobase_radius(
     upper_mass: float,
     lower_scale_heights: float,
     upper_scale_heights: Numbers,
+    upper_weight: float = 0.75,
 ) -> Numbers:
     """Inverse distance of the exobase from the planet's centre.
 
@@ -173,6 +174,8 @@ def inverse_exobase_radius(
         ln(p_ref/p_h).
     upper_scale_heights : array [1]
         ln(p_h/p_exo).
+    upper_weight : float [1]
+        Share of T_exo in T_u, ¾.
 
     Returns
     -------
@@ -192,7 +195,7 @@ def inverse_exobase_radius(
     True
     """
     well = GRAVITATION * planet_mass
-    upper = 0.75 * exobase + 0.25 * base
+    upper = upper_weight * exobase + (1 - upper_weight) * base
     lower_term = BOLTZMANN * lower_scale_heights / lower_mass * equilibrium
     upper_term = BOLTZMANN / upper_mass * upper * upper_scale_heights
     return 1 / planet_radius - (lower_term + upper_term) / well

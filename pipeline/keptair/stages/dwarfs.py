@@ -10,7 +10,6 @@ from keptair.physics.constants import SOLAR_LUMINOSITY, SOLAR_RADIUS
 from keptair.reference import load_main_sequence
 
 MAGNITUDES = {"j_mag": "absolute_j_mag", "k_mag": "absolute_k_mag"}
-LARGEST_DEPARTURE = 1.5  # a star further than this factor from its mean dwarf is not taken for one
 
 
 def mean_dwarf(column: str, temperature: Array) -> Array:
@@ -25,7 +24,7 @@ def last_dwarf(column: str, temperature: Array) -> Array:
     return mean_dwarf(column, np.clip(temperature, sequence[0], sequence[-1]))
 
 
-def fill_radius(values: dict[str, Array], sources: dict[str, Array]) -> Array:
+def fill_radius(values: dict[str, Array], sources: dict[str, Array], departure: float) -> Array:
     """Fill a missing stellar radius: from luminosity and temperature, else from the mean dwarf; say where it was that.
 
     A star whose catalogued mass departs from that dwarf's is left alone: it may be a giant.
@@ -38,18 +37,20 @@ def fill_radius(values: dict[str, Array], sources: dict[str, Array]) -> Array:
     sources["stellar_radius_rsun"][lit] = "computed"
 
     central = temperature[:, 0]
-    unlike = departs(values["stellar_mass_msun"][:, 0], mean_dwarf("mass_msun", central))
+    unlike = departs(values["stellar_mass_msun"][:, 0], mean_dwarf("mass_msun", central), departure)
     stands_in = gap & ~lit & ~np.isnan(mean_dwarf("radius_rsun", central)) & ~unlike
     radius[stands_in] = last_dwarf("radius_rsun", temperature[stands_in])
     sources["stellar_radius_rsun"][stands_in] = "relation"
     return stands_in
 
 
-def magnitudes(batch: Batch, values: dict[str, Array], sources: dict[str, Array]) -> tuple[dict[str, Array], Array]:
+def magnitudes(
+    batch: Batch, values: dict[str, Array], sources: dict[str, Array], departure: float
+) -> tuple[dict[str, Array], Array]:
     """Apparent J and K, a missing one from the mean dwarf at the system's distance; and where that was so."""
     temperature, radius = values["stellar_teff_k"][:, 0], values["stellar_radius_rsun"][:, 0]
     distance = np.where(sources["distance_pc"] == "", np.nan, batch.columns["catalogue.distance_pc"])
-    dwarf = ~np.isnan(radius) & ~departs(radius, mean_dwarf("radius_rsun", temperature))
+    dwarf = ~np.isnan(radius) & ~departs(radius, mean_dwarf("radius_rsun", temperature), departure)
     filled, stood_in = {}, np.zeros(len(batch), dtype=bool)
     for name, column in MAGNITUDES.items():
         apparent = mean_dwarf(column, temperature) + 5 * np.log10(distance / 10)
@@ -61,8 +62,8 @@ def magnitudes(batch: Batch, values: dict[str, Array], sources: dict[str, Array]
     return filled, stood_in
 
 
-def departs(value: Array, mean: Array) -> Array:
+def departs(value: Array, mean: Array, departure: float) -> Array:
     """Whether a known value is further from the mean dwarf's than a dwarf can be."""
     ratio = value / mean
-    far: Array = (ratio > LARGEST_DEPARTURE) | (ratio < 1 / LARGEST_DEPARTURE)
+    far: Array = (ratio > departure) | (ratio < 1 / departure)
     return far

@@ -13,7 +13,6 @@ from keptair.physics.constants import ATOMIC_MASS, EARTH_XUV_FLUX, GIGAYEAR
 from keptair.reference import diffusion_pair
 from keptair.reference.models import Background, Gas
 from keptair.settings import Settings
-from keptair.stages.irradiate import HYDROGEN_SHARES
 from keptair.stages.starlight import xuv_at
 from keptair.stages.upper_air import Foundation, UpperAir, foundation, upper_air
 
@@ -69,7 +68,7 @@ class Follower:
         self.efficiency = draws.log_between(*background.efficiency, made["u.efficiency"])
         self.correction = draws.log_between(*settings.jeans_factor, made["u.jeans_factor"])
         self.column = (
-            inventory(batch, background)
+            inventory(batch, background, settings.largest_hydrogen_share)
             * made["input.planet_mass_mearth"]
             / (4 * np.pi * np.square(made["input.planet_radius_rearth"]))
         )
@@ -217,12 +216,11 @@ class Follower:
         return kinetic, flux
 
 
-def inventory(batch: Batch, background: Background) -> Array:
+def inventory(batch: Batch, background: Background, largest: float) -> Array:
     """Share of the planet's mass the background starts with: read off a measured radius, or drawn."""
     drawn = draws.log_between(*background.inventory, batch.draws["u.inventory"])
     if not background.inventory_from_radius:
         return drawn
-    largest = HYDROGEN_SHARES[1]
     asked = np.clip(batch.draws["hydrogen_share"], background.inventory_floor, largest)
     return np.where(batch.columns["is.sized"][:, None], asked, drawn)
 

@@ -53,32 +53,29 @@ LIMIT_IS_MISSING = frozenset(
     }
 )
 DRAW_BOUNDS = {"eccentricity": (0.0, 0.95), "stellar_age_gyr": (0.01, 13.8)}  # others: the schema's
-LIMIT_REACH = 3.0  # a lower limit is drawn up to this many times itself
-STEEPEST_COSINE = 0.996  # cos i of a planet that need not transit
 MODEL_DRAWS = ("damping_exponent", "efficiency", "jeans_factor", "start_gyr", "inventory")
-SUBSTELLAR = 13 * JUPITER_MASS
 SETTLED_LATER = ("stellar_luminosity_lsun", "stellar_mass_msun", "semi_major_axis_au", "insolation_earth")
 
 
 def run(batch: Batch, settings: Settings) -> Batch:
     """Draw every input, then fill what the catalogue lacks."""
     sampler = Sampler(batch.columns["planet_id"], batch.columns["host_id"], settings.draws, settings.seed)
-    values, sources = read_inputs(batch, sampler)
+    values, sources = read_inputs(batch, sampler, settings.limit_reach)
     marks = error_marks(batch, sources)
     flags = {"flag.age_from_prior": sources["stellar_age_gyr"] == ""}
     fill_priors(values, sources, sampler, settings)
-    mean_dwarf = dwarfs.fill_radius(values, sources)
-    magnitudes, mean_magnitude = dwarfs.magnitudes(batch, values, sources)
+    mean_dwarf = dwarfs.fill_radius(values, sources, settings.dwarf_departure)
+    magnitudes, mean_magnitude = dwarfs.magnitudes(batch, values, sources, settings.dwarf_departure)
     flags["flag.main_sequence_fallback"] = mean_dwarf | mean_magnitude
     sized = np.isin(sources["planet_radius_rearth"], ("measured", "measured_no_error", "given"))
     transiting = (sized & (batch.columns["transits"] != "no")) | (batch.columns["transits"] == "yes")
-    incline(values, sources, transiting, sampler)
+    incline(values, sources, transiting, sampler, settings.largest_cosine)
     weighed = np.isin(sources["planet_mass_mearth"], ("measured", "measured_no_error", "given")) | (
         (sources["planet_mass_mearth"] == "minimum") & transiting
     )
     flags |= relate(values, sources, sampler, settings)
     radius, mass = values["planet_radius_rearth"] * EARTH_RADIUS, values["planet_mass_mearth"] * EARTH_MASS
-    flags["flag.substellar"] = draws.median(mass) > SUBSTELLAR
+    flags["flag.substellar"] = draws.median(mass) > settings.substellar_mjup * JUPITER_MASS
     envelope = envelope_evidence(mass, radius, weighed, sources["planet_radius_rearth"] == "relation", settings)
     assessed_bulk = ~np.isnan(mass[:, 0])
     columns = {
@@ -98,7 +95,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
     return batch.adding(columns, {**made, "is_envelope": envelope})
 
 
-def read_inputs(batch: Batch, sampler: Sampler) -> tuple[dict[str, Array], dict[str, Array]]:
+def read_inputs(batch: Batch, sampler: Sampler, limit_reach: float) -> tuple[dict[str, Array], dict[str, Array]]:
     """Draws of every catalogued input, in canonical units, and where each came from ("" where there is none)."""
     values, sources = {}, {}
     for column in schema.inputs():
@@ -132,7 +129,7 @@ def read_inputs(batch: Batch, sampler: Sampler) -> tuple[dict[str, Array], dict[
             drawn[upper] = draws.between(bounds[0], end, sampler(name)[upper])
         if lower.any():
             start = np.maximum(np.clip(value[lower, None], *bounds), 1e-300)
-            end = np.minimum(LIMIT_REACH * start, bounds[1])
+            end = np.minimum(limit_reach * start, bounds[1])
             drawn[lower] = draws.log_between(start, end, sampler(name)[lower])
         drawn[~present] = np.nan
         values[name] = drawn
@@ -179,11 +176,13 @@ def fill_priors(values: dict[str, Array], sources: dict[str, Array], sampler: Sa
     sources["eccentricity"][gap] = "assumed"
 
 
-def incline(values: dict[str, Array], sources: dict[str, Array], transiting: Array, sampler: Sampler) -> None:
+def incline(
+    values: dict[str, Array], sources: dict[str, Array], transiting: Array, sampler: Sampler, largest_cosine: float
+) -> None:
     """M sin i becomes M: cos i is uniform unless the planet transits."""
     tilted = (sources["planet_mass_mearth"] == "minimum") & ~transiting
     if tilted.any():
-        cosine = STEEPEST_COSINE * sampler("inclination")[tilted]
+        cosine = largest_cosine * sampler("inclination")[tilted]
         mass = values["planet_mass_mearth"][tilted] / np.sqrt(1 - np.square(cosine))
         values["planet_mass_mearth"][tilted] = np.minimum(mass, draw_bounds("planet_mass_mearth")[1])
 

@@ -12,10 +12,6 @@ from keptair.settings import Settings
 from keptair.stages.dwarfs import last_dwarf
 from keptair.stages.starlight import activity_draws, xuv_at
 
-HYDROGEN_SHARES = (0.001, 0.90)  # the hydrogen share is kept within these
-GIANT_RADIUS = 2.5 * SOLAR_RADIUS
-DWARF_TEMPERATURES = (2400.0, 6500.0)
-
 
 def run(batch: Batch, settings: Settings) -> Batch:
     """In the order of the light: star, orbit, flux, temperature; then the planet's own pull."""
@@ -60,7 +56,7 @@ def run(batch: Batch, settings: Settings) -> Batch:
         **error_flags(batch, flux_source),
         "flag.insolation_disagrees": disagrees,
         "flag.no_orbit": assessed & np.isnan(axis[:, 0]),
-        "flag.xuv_extrapolated": assessed & far_from_dwarfs(batch),
+        "flag.xuv_extrapolated": assessed & far_from_dwarfs(batch, settings),
     }
     return lit.with_columns(**columns)
 
@@ -117,12 +113,14 @@ def error_flags(batch: Batch, flux_source: Array) -> dict[str, Array]:
     return {f"flag.{flag}": columns[f"{mark}.all"] | (columns[f"{mark}.flux"] & used) for flag, mark in names.items()}
 
 
-def far_from_dwarfs(batch: Batch) -> Array:
+def far_from_dwarfs(batch: Batch, settings: Settings) -> Array:
     """Stars the activity law was not made for: giants, and the very hot or cool."""
     radius = draws.median(batch.draws["input.stellar_radius_rsun"])
     temperature = draws.median(batch.draws["input.stellar_teff_k"])
-    coolest, hottest = DWARF_TEMPERATURES
-    far: Array = (radius > GIANT_RADIUS) | (temperature < coolest) | (temperature > hottest)
+    coolest, hottest = settings.xuv.dwarf_teff_k
+    far: Array = (
+        (radius > settings.xuv.giant_radius_rsun * SOLAR_RADIUS) | (temperature < coolest) | (temperature > hottest)
+    )
     return far
 
 

@@ -19,7 +19,7 @@ def activity_draws(batch: Batch, light: Array, star_mass: Array, settings: Setti
     scatter = np.where(measured, law.measured_scatter_dex, law.scatter_dex)
     return {
         "bolometric": bolometric,
-        "coronal": activity.coronal_luminosity(bolometric, star_mass),
+        "coronal": activity.coronal_luminosity(bolometric, star_mass, law.coronal_cap, law.coronal_cap_above_msun),
         "saturation_age": activity.saturation_age(
             star_mass, law.saturation_gyr, law.saturation_mass_exponent, law.saturation_mass_cap_msun
         ),

@@ -81,6 +81,7 @@ def upper_air(ground: Foundation, background: Background, settings: Settings, xu
         exobase.particle_mass(background.upper_mass_u),
         exobase.lower_scale_heights(settings.reference_pressure_pa, settings.homopause_pressure_pa),
         ground.upper_heights,
+        settings.exobase_weight,
     )
     bound = inverse >= ground.smallest_inverse
     return UpperAir(conductive, temperature, 1 / np.maximum(inverse, ground.smallest_inverse), bound)
