@@ -11,6 +11,7 @@ from keptair import reference, stages
 from keptair.errors import SettingsError
 from keptair.reference.models import Background, Gas
 from keptair.settings import Settings
+from keptair.tables import schema
 
 XENON = {
     "title": "Xe",
@@ -101,3 +102,25 @@ def test_a_background_that_names_an_unknown_gas_is_refused():
 def test_a_diffusion_pair_is_the_same_either_way_round():
     assert reference.diffusion_pair("h2", ("n2",)) == reference.diffusion_pair("n2", ("h2",))
     assert reference.diffusion_pair("so2", ("co2",)) is None
+
+
+@pytest.fixture
+def larger_package(monkeypatch):
+    """The package as it would be with one gas and one background more in its own files."""
+    more = {"gases": {"xe": XENON}, "backgrounds": {"methane": METHANE_AIR}}
+    built_in = reference.read_toml
+    monkeypatch.setattr(reference, "read_toml", lambda name: built_in(name) | more.get(name, {}))
+    for loader in (reference.load_gases, reference.load_backgrounds):
+        loader.cache_clear()
+    yield
+    for loader in (reference.load_gases, reference.load_backgrounds):
+        loader.cache_clear()
+
+
+@pytest.mark.usefixtures("larger_package")
+def test_a_gas_and_a_background_in_the_packages_own_files_need_no_code_either():
+    settings = Settings(use_backgrounds=("methane", "h2"), draws=256)
+    done = stages.assess(make_batch(solar_system("earth")), settings)
+    assert "retention_xe" in schema.table("planets").names
+    assert np.isfinite(done.planets["retention_xe"]).all()
+    assert set(done.gases["background"]) == {"co2", "methane", "h2"}  # co2 is the row's own
